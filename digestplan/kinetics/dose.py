@@ -1,0 +1,400 @@
+"""The dose that a temperature programme gives, over all draws at once and without time stepping.
+
+A `Course` carries enzyme, dose, heat damage and penetration from cell to cell of a programme, and
+answers for any time within a cell. Arrays have the draws along their last axis.
+"""
+
+from collections.abc import Mapping
+from dataclasses import dataclass, replace
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from digestplan.kinetics import inactivation
+from digestplan.kinetics.depth import Geometry
+from digestplan.kinetics.programme import (
+    NODE_WEIGHTS,
+    RUNNING_WEIGHTS,
+    Cells,
+    node_interpolation,
+    partial_weights,
+)
+
+Array = NDArray[np.float64]
+Draws = slice | NDArray[np.intp]
+ALL = slice(None)
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Rates:
+    """Rates at the nodes of a programme, each of shape (n_nodes, n_draws).
+
+    Attributes
+    ----------
+    activity
+        Rate of an active enzyme molecule relative to the reference conditions. [1]
+    first
+        First-order inactivation. [1/h]
+    second
+        From the intermediate to the dead form (two-stage), or None. [1/h]
+    autolysis
+        Second-order inactivation per ratio of active enzyme, or None. [g/(unit h)]
+    heat
+        Rate at which heat destroys what must be kept, or None. [1/h]
+    penetration
+        D/L², the speed of the diffusion clock, or None where nothing holds enzyme up. [1/h]
+    """
+
+    activity: Array
+    first: Array
+    second: Array | None = None
+    autolysis: Array | None = None
+    heat: Array | None = None
+    penetration: Array | None = None
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class State:
+    """What one moment hands to the next. Shapes (n_draws,) unless said.
+
+    Attributes
+    ----------
+    fresh, intermediate
+        Enzyme in the bath per substrate, in its fresh and its intermediate form. [unit/g]
+    charged
+        Enzyme charged so far per substrate, active at the time it was added. [unit/g]
+    dose
+        Dose at the surface of the sample. [unit h/g]
+    heat
+        Exponent of the keep loss by heat. [1]
+    local
+        Dose at the depth points, shape (n_points, n_draws), or None without penetration. [unit h/g]
+    modal_fresh, modal_intermediate
+        How much of the enzyme each diffusion mode still lacks, shape (n_modes, n_draws), or
+        None. [unit/g]
+    """
+
+    fresh: Array
+    intermediate: Array
+    charged: Array
+    dose: Array
+    heat: Array
+    local: Array | None = None
+    modal_fresh: Array | None = None
+    modal_intermediate: Array | None = None
+
+    def of(self, draws: Draws) -> "State":
+        """The same moment for some of the draws."""
+
+        def pick(a: Any) -> Any:
+            return None if a is None else a[..., draws]
+
+        return State(*(pick(getattr(self, name)) for name in self.__slots__))
+
+
+def nothing(n_draws: int, geometry: Geometry | None = None) -> State:
+    """
+    Return the state before any enzyme was added [1]_.
+
+    Parameters
+    ----------
+    n_draws : int
+        Number of draws. [1]
+    geometry : Geometry or None
+        Depth points and modes, where penetration counts. [1]
+
+    Returns
+    -------
+    state : State
+        All zero. [1]
+
+    References
+    ----------
+    .. [1] By definition.
+    """
+    zero = np.zeros(n_draws)
+    if geometry is None:
+        return State(zero, zero, zero, zero, zero)
+    modes = np.zeros((len(geometry.squares), n_draws))
+    local = np.zeros((len(geometry.points), n_draws))
+    return State(zero, zero, zero, zero, zero, local, modes, modes)
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class _Moving:
+    """Node values of a cell in which the temperature changes."""
+
+    active: Array
+    effect: Array
+    heat: Array | None
+    local: Array | None
+
+
+class Course:
+    """The enzyme's course through a programme.
+
+    Parameters
+    ----------
+    cells
+        The programme.
+    rates
+        Rates at its nodes.
+    start
+        State at its beginning, before the enzyme of this step is added.
+    charges
+        Enzyme added at the start of cells, by cell index, each of shape (n_draws,). [unit/g]
+    intermediate_activity
+        Activity of the intermediate form relative to the fresh one, shape (n_draws,). [1]
+    saturation
+        Ratio at which the surface is half saturated, shape (n_draws,), or None. [unit/g]
+    geometry
+        Depth points and modes, or None without penetration.
+    """
+
+    def __init__(
+        self,
+        cells: Cells,
+        rates: Rates,
+        start: State,
+        charges: Mapping[int, Array],
+        intermediate_activity: Array | float = 0.0,
+        saturation: Array | None = None,
+        geometry: Geometry | None = None,
+    ) -> None:
+        self.cells, self.rates, self.geometry = cells, rates, geometry
+        self.saturation = saturation
+        n_draws = len(start.fresh)
+        self.intermediate_activity = np.broadcast_to(
+            np.asarray(intermediate_activity, dtype=float), (n_draws,)
+        )
+        self._moving: dict[int, _Moving] = {}
+        self.starts: list[State] = []
+        state = start
+        for cell in range(cells.n_cells):
+            if cell in charges:
+                state = self._add(state, charges[cell])
+            self.starts.append(state)
+            if cell < cells.n_cells - 1:
+                state = self._advance(cell)
+
+    def at(self, time: float) -> State:
+        """State at one time for all draws; modes are not carried inside a cell. [h]."""
+        cell = self.cells.cell_at(time)
+        return self.within(cell, time - float(self.cells.edges[cell]))
+
+    def at_end(self) -> State:
+        """State at the end of the programme as written, with its modes."""
+        cell = self.cells.cell_at(self.cells.end)
+        length = self.cells.end - float(self.cells.edges[cell])
+        if len(self.cells.nodes[cell]) == 1:
+            return self._constant(cell, length, ALL, modes=True)
+        return self._advance(cell)
+
+    def active(self, state: State, draws: Draws = ALL) -> Array:
+        """Active enzyme of a state; an intermediate counts with its activity. [unit/g]."""
+        return state.fresh + self.intermediate_activity[draws] * state.intermediate
+
+    def within(self, cell: int, elapsed: Array | float, draws: Draws = ALL) -> State:
+        """State so many hours after the start of a cell, for all draws or some of them."""
+        if len(self.cells.nodes[cell]) == 1:
+            return self._constant(cell, elapsed, draws, modes=False)
+        return self._inside_moving(cell, elapsed, draws)
+
+    # -- one cell -------------------------------------------------------------------------
+
+    def _add(self, state: State, amount: Array) -> State:
+        state = replace(state, fresh=state.fresh + amount, charged=state.charged + amount)
+        if state.modal_fresh is None:
+            return state
+        return replace(state, modal_fresh=state.modal_fresh + amount)
+
+    def _length(self, cell: int) -> float:
+        return float(self.cells.edges[cell + 1] - self.cells.edges[cell])
+
+    def _advance(self, cell: int) -> State:
+        if len(self.cells.nodes[cell]) == 1:
+            return self._constant(cell, self._length(cell), ALL, modes=True)
+        return self._end_of_moving(cell)
+
+    def _coverage(self, state: State, draws: Draws) -> Array | float:
+        """Langmuir: the share by which a crowded surface slows each molecule."""
+        if self.saturation is None:
+            return 1.0
+        coverage: Array = 1 / (1 + state.charged / self.saturation[draws])
+        return coverage
+
+    def _constant(self, cell: int, elapsed: Array | float, draws: Draws, *, modes: bool) -> State:
+        start, rates = self.starts[cell].of(draws), self.rates
+        node = self.cells.nodes[cell][0]
+        first = rates.first[node, draws]
+        second = None if rates.second is None else rates.second[node, draws]
+        other = self.intermediate_activity[draws]
+        intermediate = start.intermediate
+        if second is not None:
+            fresh, intermediate, integral, passed = inactivation.two_stage(
+                start.fresh, intermediate, first, second, elapsed
+            )
+            integral = integral + other * passed
+        elif rates.autolysis is not None:
+            fresh, integral = inactivation.autolysis(
+                start.fresh, first, rates.autolysis[node, draws], elapsed
+            )
+        else:
+            fresh, integral = inactivation.first_order(start.fresh, first, elapsed)
+        effect = self._coverage(start, draws) * rates.activity[node, draws]
+        heat = start.heat
+        if rates.heat is not None:
+            heat = heat + rates.heat[node, draws] * elapsed
+        after = State(fresh, intermediate, start.charged, start.dose + effect * integral, heat)
+        if self.geometry is None:
+            return after
+        return self._penetrate(cell, start, after, elapsed, draws, effect * integral, modes=modes)
+
+    def _penetrate(
+        self,
+        cell: int,
+        start: State,
+        after: State,
+        elapsed: Array | float,
+        draws: Draws,
+        given: Array,
+        *,
+        modes: bool,
+    ) -> State:
+        geometry, rates, node = self.geometry, self.rates, self.cells.nodes[cell][0]
+        assert geometry is not None
+        assert rates.penetration is not None
+        assert start.modal_fresh is not None
+        assert start.local is not None
+        pace = rates.penetration[node, draws]
+        extra = geometry.squares[:, None] * pace
+        first = rates.first[node, draws]
+        if rates.second is None:
+            modal_fresh, lacking = inactivation.first_order(
+                start.modal_fresh, first + extra, elapsed
+            )
+            modal_intermediate = start.modal_intermediate
+        else:
+            assert start.modal_intermediate is not None
+            modal_fresh, modal_intermediate, lacking, passed = inactivation.two_stage(
+                start.modal_fresh,
+                start.modal_intermediate,
+                first,
+                rates.second[node, draws],
+                elapsed,
+                extra,
+            )
+            lacking = lacking + self.intermediate_activity[draws] * passed
+        effect = self._coverage(start, draws) * rates.activity[node, draws]
+        local = start.local + given - effect * (geometry.lack @ lacking)
+        if not modes:
+            return replace(after, local=np.maximum(local, 0.0))
+        return replace(
+            after, local=local, modal_fresh=modal_fresh, modal_intermediate=modal_intermediate
+        )
+
+    # -- a cell in which the temperature changes ------------------------------------------
+
+    def _transfers(self, cell: int) -> tuple[tuple[Array, ...], tuple[Array, ...]]:
+        nodes, hours = list(self.cells.nodes[cell]), self._length(cell)
+        first = self.rates.first[nodes]
+        if self.rates.second is not None:
+            return inactivation.two_stage_at_nodes(first, self.rates.second[nodes], hours)
+        if self.rates.autolysis is not None:
+            at_nodes, at_end = inactivation.autolysis_at_nodes(
+                self.starts[cell].fresh, first, self.rates.autolysis[nodes], hours
+            )
+        else:
+            at_nodes, at_end = inactivation.survival_at_nodes(first, hours)
+        return (at_nodes,), (at_end,)
+
+    def _carry(
+        self, transfers: tuple[Array, ...], fresh: Array, intermediate: Array
+    ) -> tuple[Array, Array]:
+        if len(transfers) == 1:
+            return transfers[0] * fresh, np.zeros_like(transfers[0] * fresh)
+        kept, passed, other = transfers
+        return kept * fresh, passed * fresh + other * intermediate
+
+    def _moving_values(self, cell: int) -> _Moving:
+        if cell in self._moving:
+            return self._moving[cell]
+        start, nodes = self.starts[cell], list(self.cells.nodes[cell])
+        transfers, _ = self._transfers(cell)
+        fresh, intermediate = self._carry(transfers, start.fresh, start.intermediate)
+        active = fresh + self.intermediate_activity * intermediate
+        weight = self._coverage(start, ALL) * self.rates.activity[nodes]
+        local = self._local_rates(cell, transfers, weight, active)
+        heat = None if self.rates.heat is None else self.rates.heat[nodes]
+        self._moving[cell] = _Moving(active, weight * active, heat, local)
+        return self._moving[cell]
+
+    def _clock(self, cell: int) -> tuple[Array, Array]:
+        """Diffusion clock θ within a cell at its nodes and at its end."""
+        assert self.rates.penetration is not None
+        pace, hours = self.rates.penetration[list(self.cells.nodes[cell])], self._length(cell)
+        return hours * (RUNNING_WEIGHTS @ pace), hours * (NODE_WEIGHTS @ pace)
+
+    def _local_rates(
+        self, cell: int, transfers: tuple[Array, ...], weight: Array, active: Array
+    ) -> Array | None:
+        start, geometry = self.starts[cell], self.geometry
+        if geometry is None:
+            return None
+        assert start.modal_fresh is not None
+        assert start.modal_intermediate is not None
+        at_nodes, _ = self._clock(cell)
+        rows = []
+        for i, theta in enumerate(at_nodes):
+            decay = np.exp(-geometry.squares[:, None] * np.maximum(theta, 0.0))
+            one = tuple(t[i] for t in transfers)
+            fresh, intermediate = self._carry(one, start.modal_fresh, start.modal_intermediate)
+            lacking = (fresh + self.intermediate_activity * intermediate) * decay
+            rows.append(weight[i] * (active[i] - geometry.lack @ lacking))
+        return np.stack(rows, axis=1)
+
+    def _end_of_moving(self, cell: int) -> State:
+        start, hours = self.starts[cell], self._length(cell)
+        values = self._moving_values(cell)
+        _, at_end = self._transfers(cell)
+        fresh, intermediate = self._carry(at_end, start.fresh, start.intermediate)
+        heat = start.heat
+        if values.heat is not None:
+            heat = heat + hours * (NODE_WEIGHTS @ values.heat)
+        dose = start.dose + hours * (NODE_WEIGHTS @ values.effect)
+        after = State(fresh, intermediate, start.charged, dose, heat)
+        if values.local is None:
+            return after
+        assert start.local is not None
+        assert self.geometry is not None
+        assert start.modal_fresh is not None
+        assert start.modal_intermediate is not None
+        _, theta = self._clock(cell)
+        decay = np.exp(-self.geometry.squares[:, None] * theta)
+        modal = self._carry(at_end, start.modal_fresh, start.modal_intermediate)
+        local = start.local + hours * np.einsum("j,pjn->pn", NODE_WEIGHTS, values.local)
+        return replace(
+            after, local=local, modal_fresh=modal[0] * decay, modal_intermediate=modal[1] * decay
+        )
+
+    def _inside_moving(self, cell: int, elapsed: Array | float, draws: Draws) -> State:
+        start, hours = self.starts[cell].of(draws), self._length(cell)
+        values = self._moving_values(cell)
+        share = np.broadcast_to(np.asarray(elapsed, dtype=float) / hours, start.fresh.shape)
+        weights, here = hours * partial_weights(share), node_interpolation(share)
+        heat = start.heat
+        if values.heat is not None:
+            heat = heat + (weights * values.heat[:, draws]).sum(axis=0)
+        after = State(
+            (here * values.active[:, draws]).sum(axis=0),
+            np.zeros_like(start.fresh),
+            start.charged,
+            start.dose + (weights * values.effect[:, draws]).sum(axis=0),
+            heat,
+        )
+        if values.local is None:
+            return after
+        assert start.local is not None
+        local = start.local + np.einsum("jn,pjn->pn", weights, values.local[:, :, draws])
+        return replace(after, local=np.maximum(local, 0.0))
