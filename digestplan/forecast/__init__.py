@@ -1,1 +1,1 @@
-"""."""
+"""From a plan to its forecast."""

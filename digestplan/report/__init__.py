@@ -1,1 +1,1 @@
-"""."""
+"""Words, tables and pages made from a finished forecast."""

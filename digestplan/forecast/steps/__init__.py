@@ -1,1 +1,15 @@
-"""."""
+"""The steps of a treatment; `run_step` finds the one that a plan asks for."""
+
+from digestplan.forecast.result import StepForecast
+from digestplan.forecast.steps import digest
+from digestplan.forecast.steps.base import Carried, Job
+from digestplan.plan.model import Step
+
+_RUNNERS = {"digest": digest.run, "hold": digest.run}
+
+
+def run_step(
+    step: Step, index: int, job: Job, carried: Carried, *, open_ended: bool
+) -> tuple[StepForecast, Carried]:
+    """Forecast one step from what the step before left; return its forecast and what it leaves."""
+    return _RUNNERS[step.do](step, index, job, carried, open_ended=open_ended)

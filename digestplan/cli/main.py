@@ -1,0 +1,102 @@
+"""The command line: its grammar, and which module carries out what."""
+
+import argparse
+import sys
+from collections.abc import Sequence
+from functools import partial
+from importlib import import_module
+
+from digestplan import __version__
+from digestplan.cli import diagnostics, output
+
+_MOST_DRAWS = 1_000_000
+
+
+def main(arguments: Sequence[str] | None = None) -> int:
+    """
+    Run the command line.
+
+    Parameters
+    ----------
+    arguments
+        Words after the program's name; those of the process where None.
+
+    Returns
+    -------
+    status
+        0 done; 1 the input is wrong; 2 the command line is wrong; 3 the program failed.
+    """
+    output.prepare()
+    chosen = parser().parse_args(arguments)
+    if chosen.module is None:
+        parser().print_help(sys.stderr)
+        return diagnostics.WRONG_COMMAND
+    command = getattr(import_module(f"digestplan.cli.{chosen.module}"), chosen.function)
+    return diagnostics.run(partial(command, chosen))
+
+
+def parser() -> argparse.ArgumentParser:
+    """Return the grammar of the command line; it loads nothing of the program."""
+    top = argparse.ArgumentParser(
+        prog="digestplan",
+        description="Plan the enzymatic digestion of a small piece of tissue, and know when it "
+        "is ready.",
+        allow_abbrev=False,
+    )
+    top.add_argument("--version", action="version", version=f"digestplan {__version__}")
+    top.set_defaults(module=None, function=None)
+    commands = top.add_subparsers(title="commands", metavar="COMMAND")
+    shared = shared_options()
+    _add(commands, shared, "forecast", "forecast", "one plan's forecast, as a short report", "plan")
+    _add(commands, shared, "library", "library", "what the library knows, with its sources", "key")
+    return top
+
+
+def shared_options() -> argparse.ArgumentParser:
+    """Return the options that all commands take."""
+    shared = argparse.ArgumentParser(add_help=False, allow_abbrev=False)
+    shared.add_argument("--json", action="store_true", help="one JSON document on standard output")
+    shared.add_argument(
+        "--draws", type=_count, default=2000, metavar="N", help="how many draws (default 2000)"
+    )
+    shared.add_argument(
+        "--seed", type=_seed, default=1, metavar="N", help="same seed, same numbers (default 1)"
+    )
+    shared.add_argument(
+        "--register", metavar="PATH-OR-URL", help="the lot register (default: the user's own)"
+    )
+    return shared
+
+
+def _add(
+    commands: "argparse._SubParsersAction[argparse.ArgumentParser]",
+    shared: argparse.ArgumentParser,
+    name: str,
+    module: str,
+    does: str,
+    *operands: str,
+) -> argparse.ArgumentParser:
+    command = commands.add_parser(
+        name, help=does, description=does, parents=[shared], allow_abbrev=False
+    )
+    for operand in operands:
+        if operand == "plan":
+            command.add_argument("plan", metavar="PLAN", help="the plan file (TOML)")
+        else:
+            command.add_argument(operand, metavar=operand.upper(), nargs="?", help="an entry's key")
+    command.set_defaults(module=module, function="run")
+    return command
+
+
+def _count(text: str) -> int:
+    value = int(text)
+    if not 1 <= value <= _MOST_DRAWS:
+        raise argparse.ArgumentTypeError(f"a number from 1 to {_MOST_DRAWS} is wanted")
+    return value
+
+
+def _seed(text: str) -> int:
+    value = int(text)
+    if value < 0:
+        raise argparse.ArgumentTypeError("a seed is 0 or more")
+    return value

@@ -1,0 +1,95 @@
+"""What limits a plan, in words: what holds the digest up, and what makes its window wide."""
+
+from collections.abc import Iterator, Sequence
+
+import numpy as np
+from numpy.typing import NDArray
+
+from digestplan.forecast.cautions import percent
+from digestplan.forecast.result import DigestForecast, StepForecast
+from digestplan.forecast.steps.base import Job
+
+Array = NDArray[np.float64]
+
+_WORTH_TELLING = 0.1
+
+
+def limits_of(job: Job, steps: Sequence[StepForecast]) -> tuple[str, ...]:
+    """
+    Say what limits a plan, the most important first.
+
+    Parameters
+    ----------
+    job
+        The plan, drawn.
+    steps
+        The forecasts of its steps.
+
+    Returns
+    -------
+    limits
+        Sentences.
+    """
+    digests = [step for step in steps if isinstance(step, DigestForecast)]
+    if not digests:
+        return ()
+    return tuple([*_holds_up(job, digests), *_makes_uncertain(job, digests)])
+
+
+def _holds_up(job: Job, digests: Sequence[DigestForecast]) -> Iterator[str]:
+    target = job.plan.sample.target_extent.quantity.value
+    step = next((d for d in digests if d.hours_to_target.p50 is not None), digests[-1])
+    ceiling, residual = step.ceiling.p50 or 0.0, step.residual_activity_at_end.p50 or 0.0
+    mean, centre = step.extent_at_end.p50 or 0.0, step.extent_at_centre.p50 or 0.0
+    if ceiling < target:
+        yield f"The enzyme dies before it is done: the ceiling is {percent(ceiling)}."
+    elif job.response.geometry is not None and mean - centre > 0.05:
+        yield "The way in: enzyme reaches the centre later than the rim."
+    elif residual < 0.2:
+        yield f"The enzyme's life: {percent(residual)} of it is left at the end of the step."
+    elif step.hours_to_target.p50 is None:
+        yield "Time: the target would be reached, but not before the step ends."
+    else:
+        yield "Nothing holds it up: more enzyme or more warmth would simply be faster."
+
+
+def _makes_uncertain(job: Job, digests: Sequence[DigestForecast]) -> Iterator[str]:
+    shares = uncertainty_shares(job, np.minimum.reduce([d.start_h + d.ready_h for d in digests]))
+    telling = [(name, share) for name, share in shares if share >= _WORTH_TELLING][:3]
+    if telling:
+        names = ", ".join(f"{name} ({percent(share)})" for name, share in telling)
+        yield f"Most of the uncertainty about when comes from {names}."
+
+
+def uncertainty_shares(job: Job, hours: Array) -> list[tuple[str, float]]:
+    """
+    Return how much of the spread of a time each input explains, largest first.
+
+    Parameters
+    ----------
+    job
+        The plan, drawn.
+    hours
+        Draws of a time, infinite for never; shape (n_draws,). [h]
+
+    Returns
+    -------
+    shares
+        Input and share, from a linear regression of the ranks of the time on the inputs'
+        deviates. [1]
+
+    References
+    ----------
+    A. Saltelli and J. Marivoet, Reliab. Eng. Syst. Saf. 28, 229, 1990 (standardised rank
+    regression; from memory).
+    """
+    names = list(job.draws.inputs)
+    if not names or len(hours) < 4 * len(names) or np.ptp(np.nan_to_num(hours, posinf=1e9)) == 0:
+        return []
+    ranks = np.argsort(np.argsort(hours, kind="stable"), kind="stable").astype(float)
+    response = (ranks - ranks.mean()) / ranks.std()
+    deviates = np.stack([np.asarray(job.draws.deviate(name)) for name in names])
+    deviates = deviates - deviates.mean(axis=1, keepdims=True)
+    coefficients, *_ = np.linalg.lstsq(deviates.T, response, rcond=None)
+    shares = (coefficients * deviates.std(axis=1)) ** 2
+    return sorted(zip(names, map(float, shares), strict=True), key=lambda pair: -pair[1])

@@ -1,0 +1,54 @@
+"""What a step gets and what it hands on. One kind of step is one file beside this one."""
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from digestplan.forecast.conditions import EnzymeDraws
+from digestplan.forecast.draws import Draws
+from digestplan.forecast.environment import Liquid
+from digestplan.forecast.response import Response
+from digestplan.kinetics.dose import State
+from digestplan.plan.model import Plan
+
+Array = NDArray[np.float64]
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Job:
+    """What holds for the whole plan: the plan, its draws, the enzyme and the sample's answer.
+
+    ``damage`` holds the drawn heat damage of what must be kept.
+    """
+
+    plan: Plan
+    draws: Draws
+    enzyme: EnzymeDraws
+    response: Response
+    damage: dict[str, Array]
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Carried:
+    """What one step leaves to the next.
+
+    Attributes
+    ----------
+    clock
+        Hours since the plan's start. [h]
+    temperature
+        Sample temperature at the end of the step, shape (n_draws,); None before the first. [K]
+    state
+        Enzyme, dose and damage so far.
+    liquid
+        What the sample lies in.
+    volume
+        Volume of that liquid, shape (n_draws,); None where the plan does not say. [mL]
+    """
+
+    clock: float
+    temperature: Array | None
+    state: State
+    liquid: Liquid
+    volume: Array | None

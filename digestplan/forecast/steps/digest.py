@@ -1,0 +1,251 @@
+"""Digest: fresh enzyme in its liquid, through a temperature programme."""
+
+from collections.abc import Sequence
+from dataclasses import replace
+
+import numpy as np
+from numpy.typing import NDArray
+
+from digestplan.forecast.amounts import (
+    active_ratio,
+    label_activity,
+    substrate_mass,
+    weighed_ratio,
+)
+from digestplan.forecast.conditions import rates_at
+from digestplan.forecast.draws import Draws
+from digestplan.forecast.environment import Liquid, free_calcium, liquid_of, ph_at
+from digestplan.forecast.known_run import susceptibility_for
+from digestplan.forecast.result import Curve, DigestForecast
+from digestplan.forecast.steps.base import Carried, Job
+from digestplan.forecast.timeline import Timeline
+from digestplan.forecast.window import bands, on_clock, spread, window
+from digestplan.kinetics.damage import keep_loss
+from digestplan.kinetics.dose import Course, Rates, State, nothing
+from digestplan.kinetics.programme import Cells, Leg, compile_programme
+from digestplan.plan.model import Digest, Hold, Plan
+
+Array = NDArray[np.float64]
+
+_LAG_OF_ONE_ML = 2.5 / 60  # [h] common practice: a tube of 1 mL follows its bath in minutes
+_MOST_DEATH = 3.0  # e-folds of inactivation that one moving cell may hold
+_MOST_PIECES = 16
+
+
+def run(
+    step: Digest | Hold, index: int, job: Job, carried: Carried, *, open_ended: bool
+) -> tuple[DigestForecast, Carried]:
+    """
+    Forecast a digest step, or a hold in which its enzyme goes on.
+
+    Parameters
+    ----------
+    step
+        The step.
+    index
+        Its place in the plan.
+    job
+        What holds for the whole plan.
+    carried
+        What the step before left.
+    open_ended
+        Nothing follows: the tube stays at its last temperature until somebody comes.
+
+    Returns
+    -------
+    forecast, carried
+        The step's forecast, and what it leaves to the next.
+    """
+    charges, start = _charges(step, job, carried)
+    if isinstance(step, Digest):
+        liquid = liquid_of(step.environment, job.draws, carried.liquid)
+        volume = None if step.volume is None else job.draws.of(step.volume)
+    else:
+        liquid, volume = carried.liquid, carried.volume
+    set_points = _set_points(step, job.draws, carried)
+    cells, rates = _course_of(step, job, liquid, volume, set_points, list(charges))
+    by_cell = {0 if after == 0 else cells.cell_at(after) + 1: c for after, c in charges.items()}
+    course = Course(
+        cells,
+        rates,
+        start,
+        by_cell,
+        job.enzyme.values.get("intermediate_activity", 0.0),
+        job.enzyme.values.get("saturation_ratio"),
+        job.response.geometry,
+    )
+    timeline = Timeline(course, job.response, open_ended=open_ended)
+    forecast = _told(step, index, job, carried.clock, timeline, liquid, set_points)
+    temperature = cells.end_weights @ set_points
+    clock = carried.clock + cells.end
+    return forecast, Carried(clock, temperature, course.at_end(), liquid, volume)
+
+
+def _charges(
+    step: Digest | Hold, job: Job, carried: Carried
+) -> tuple[dict[float, Array], State]:
+    """Enzyme added by time, and the state of the sample in its new, still empty, liquid."""
+    if isinstance(step, Hold):
+        return {}, carried.state
+    plan, draws, before = job.plan, job.draws, carried.state
+    charges = {0.0: active_ratio(plan, draws, step)}
+    for addition in step.additions:
+        amount = weighed_ratio(plan, draws, addition.charge, None)
+        charges[addition.after] = charges.get(addition.after, 0.0) + amount
+    empty = nothing(draws.n_draws, job.response.geometry)
+    return charges, replace(empty, dose=before.dose, heat=before.heat, local=before.local)
+
+
+def _set_points(step: Digest | Hold, draws: Draws, carried: Carried) -> Array:
+    """Temperatures of the programme, shape (n_legs + 1, n_draws); the first is the sample's."""
+    points = [draws.temperature(stretch.temperature) for stretch in step.programme]
+    if step.start_temperature is not None:
+        first = draws.of(step.start_temperature)
+    elif carried.temperature is not None:
+        first = carried.temperature
+    else:
+        first = points[0]
+    return np.stack([first, *points])
+
+
+def lag_of(step: Digest | Hold, volume: Array | None) -> float:
+    """Time constant with which the sample follows its bath: as stated, or by the volume. [h]"""
+    if step.lag is not None:
+        return step.lag.quantity.value
+    if volume is None:
+        return 0.0
+    return _LAG_OF_ONE_ML * float(np.sqrt(np.median(volume)))
+
+
+def concentration_per_ratio(plan: Plan, draws: Draws, volume: Array | None) -> Array | None:
+    """Active enzyme in a bath for a ratio of 1, shape (n_draws,). [g/mL per unit/g]"""
+    if volume is None:
+        return None
+    return substrate_mass(plan, draws) / (label_activity(plan, draws) * volume)
+
+
+def _course_of(
+    step: Digest | Hold,
+    job: Job,
+    liquid: Liquid,
+    volume: Array | None,
+    set_points: Array,
+    breaks: Sequence[float],
+) -> tuple[Cells, Rates]:
+    """Cut the programme so finely that its moving cells hold little death each."""
+    legs = [Leg(stretch.hours, stretch.ramp) for stretch in step.programme]
+    nominal = np.median(set_points, axis=1)
+    depth = job.response.geometry is not None
+    graded = depth and job.enzyme.enzyme.inactivation == "autolysis"
+    half = None
+    if depth:
+        assert job.plan.sample.thickness is not None
+        half = job.draws.of(job.plan.sample.thickness) / 2
+    lag, per_ratio = lag_of(step, volume), concentration_per_ratio(job.plan, job.draws, volume)
+    pieces = 1
+    while True:
+        cells = compile_programme(legs, nominal, lag, breaks, pieces, graded)
+        temperatures = cells.temperatures(set_points)
+        rates = rates_at(job.enzyme, temperatures, liquid, half, per_ratio, job.damage)
+        wanted = int(np.ceil(_most_death_in_a_moving_cell(cells, rates) / _MOST_DEATH))
+        if wanted <= 1 or pieces > 1:
+            return cells, rates
+        pieces = min(wanted, _MOST_PIECES)
+
+
+def _most_death_in_a_moving_cell(cells: Cells, rates: Rates) -> float:
+    lengths = np.diff(cells.edges)
+    moving = [cell for cell in range(cells.n_cells) if len(cells.nodes[cell]) > 1]
+    worst = 0.0
+    for cell in moving:
+        rate = rates.first[list(cells.nodes[cell])].max()
+        if rates.second is not None:
+            rate = max(rate, rates.second[list(cells.nodes[cell])].max())
+        worst = max(worst, float(rate) * float(lengths[cell]))
+    return worst
+
+
+def _told(
+    step: Digest | Hold,
+    index: int,
+    job: Job,
+    clock: float,
+    timeline: Timeline,
+    liquid: Liquid,
+    set_points: Array,
+) -> DigestForecast:
+    plan, course, response = job.plan, timeline.course, job.response
+    begin = on_clock(plan.start, clock)
+    ready, too_far = _times(job, timeline)
+    end, forever = timeline.states[-1], timeline.for_ever()
+    residual = _residual(course, end)
+    last = np.median(set_points[-1:], axis=0)[None, :]
+    return DigestForecast(
+        do=step.do,
+        index=index,
+        start_h=clock,
+        hours=timeline.end,
+        start=begin,
+        end=on_clock(begin, timeline.end),
+        extent_at_end=spread(response.extent(end)),
+        extent_at_centre=spread(response.extent_at_centre(end)),
+        residual_activity_at_end=spread(residual),
+        keep_loss_at_end=spread(response.keep_loss(end)),
+        ceiling=spread(response.extent(forever)),
+        dose_at_end=spread(end.dose),
+        dose_unit=f"{plan.activity_unit} h/g",
+        hours_to_target=spread(ready),
+        never_reaches_target=float(np.isinf(ready).mean()),
+        hours_to_keep_limit=spread(too_far),
+        window=window(ready, too_far, plan.confidence, begin),
+        curve=_curve(timeline, set_points),
+        ph_at_temperature=ph_at(liquid, _working_temperature(step)),
+        free_calcium=free_calcium(liquid, last),
+        ready_h=ready,
+        too_far_h=too_far,
+        harm_by_heat=float(np.median(keep_loss(end.heat))),
+        enzyme_factor=_enzyme_factor(job, forever),
+    )
+
+
+def _enzyme_factor(job: Job, forever: State) -> Array:
+    """How many times the enzyme would bring each draw to the target in the end."""
+    target = np.minimum(job.draws.of(job.plan.sample.target_extent), 1 - 1e-9)
+    needed = susceptibility_for(
+        target, forever, job.response.law, lambda _: job.response.parameters, job.response.geometry
+    )
+    return needed / job.response.susceptibility
+
+
+def _working_temperature(step: Digest | Hold) -> float:
+    """Temperature at which the step spends most of its enzyme: its warmest set point. [K]"""
+    return max(stretch.temperature.quantity.value for stretch in step.programme)
+
+
+def _times(job: Job, timeline: Timeline) -> tuple[Array, Array]:
+    """Hours to the target and to the keep-loss limit, infinite for never."""
+    sample, response, draws = job.plan.sample, job.response, job.draws
+    target = draws.of(sample.target_extent)
+    ready = timeline.time_to(response.extent, target)
+    if sample.keep_loss_limit is None:
+        return ready, np.full(draws.n_draws, np.inf)
+    return ready, timeline.time_to(response.keep_loss, draws.of(sample.keep_loss_limit))
+
+
+def _residual(course: Course, state: State) -> Array:
+    charged = np.where(state.charged > 0, state.charged, 1.0)
+    return course.active(state) / charged
+
+
+def _curve(timeline: Timeline, set_points: Array) -> Curve:
+    course, response = timeline.course, timeline.response
+    extent = bands(timeline.over_time(response.extent))
+    activity = timeline.over_time(lambda state, _: _residual(course, state))
+    nominal = np.median(set_points, axis=1)
+    temperature = [course.cells.temperature_at(float(h), nominal) for h in timeline.hours]
+    return Curve(
+        timeline.hours,
+        *extent,
+        np.median(activity, axis=1),
+        np.array(temperature) - 273.15,
+    )

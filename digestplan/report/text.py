@@ -1,0 +1,113 @@
+"""A forecast as plain text: read in ten seconds, 80 columns, no colour needed."""
+
+import textwrap
+from collections.abc import Iterator
+
+from digestplan.forecast.result import DigestForecast, Forecast, StepForecast
+from digestplan.forecast.window import Spread
+from digestplan.report import words
+from digestplan.report.verdict import verdict
+
+WIDTH = 79
+
+
+def forecast_text(forecast: Forecast) -> str:
+    """
+    Return the report on a forecast.
+
+    Parameters
+    ----------
+    forecast
+        The finished forecast.
+
+    Returns
+    -------
+    text
+        Verdict, table, limits and cautions; lines of at most 79 characters.
+    """
+    blocks = [
+        _wrapped(verdict(forecast)),
+        _wrapped(words.plain(forecast.plan.title)),
+        *(_step(forecast, step) for step in forecast.steps),
+        _visits(forecast),
+        _limits(forecast),
+        _cautions(forecast),
+        _wrapped(_how(forecast)),
+    ]
+    return "\n\n".join(block for block in blocks if block) + "\n"
+
+
+def _wrapped(text: str, indent: str = "", first: str | None = None) -> str:
+    return textwrap.fill(
+        text,
+        WIDTH,
+        initial_indent=indent if first is None else first,
+        subsequent_indent=indent,
+        break_on_hyphens=False,
+    )
+
+
+def _step(forecast: Forecast, step: StepForecast) -> str:
+    head = f"{step.index + 1} {step.do}"
+    if step.start is not None and step.end is not None:
+        head += f"  {words.day_and_time(step.start)} to {words.day_and_time(step.end)}"
+    head += f"  ({words.hours(step.hours)})"
+    rows = list(_rows(forecast, step))
+    exact = forecast.n_draws == 1
+    table = [head]
+    if rows and not exact:
+        table.append(f"  {'':<30}{'5 %':>12}{'median':>12}{'95 %':>12}")
+    for name, spread, say in rows:
+        cells = (spread.p50,) if exact else (spread.p05, spread.p50, spread.p95)
+        table.append(f"  {name:<30}" + "".join(f"{say(cell):>12}" for cell in cells))
+    return "\n".join(table)
+
+
+def _rows(forecast: Forecast, step: StepForecast) -> Iterator[tuple[str, Spread, object]]:
+    if not isinstance(step, DigestForecast):
+        return
+    yield "hours to target", step.hours_to_target, words.hours
+    if forecast.plan.sample.keep_loss_limit is not None:
+        yield "hours to keep-loss limit", step.hours_to_keep_limit, words.hours
+    yield "extent at the end", step.extent_at_end, words.percent
+    if step.extent_at_centre != step.extent_at_end:
+        yield "extent at the centre", step.extent_at_centre, words.percent
+    yield "keep loss at the end", step.keep_loss_at_end, words.percent
+    yield "enzyme still active", step.residual_activity_at_end, words.percent
+    yield "ceiling, however long", step.ceiling, words.percent
+
+
+def _visits(forecast: Forecast) -> str:
+    if not forecast.visits:
+        return ""
+    lines = [f"{'Visits':<32}{'in time':>12}{'not ready':>12}{'too far':>12}"]
+    for chance in forecast.visits:
+        when = words.visit(chance.visit.start, chance.visit.end)
+        shares = (chance.in_time, chance.not_ready, chance.too_far)
+        lines.append(f"  {when:<30}" + "".join(f"{words.percent(s):>12}" for s in shares))
+    return "\n".join(lines)
+
+
+def _limits(forecast: Forecast) -> str:
+    if not forecast.limits:
+        return ""
+    return "What limits it\n" + "\n".join(_wrapped(t, "    ", "  - ") for t in forecast.limits)
+
+
+def _cautions(forecast: Forecast) -> str:
+    if not forecast.cautions:
+        return ""
+    lines = ["Cautions"]
+    for caution in forecast.cautions:
+        step = "" if caution.step is None else f"step {caution.step + 1}: "
+        lines.append(_wrapped(step + caution.text, " " * 8, f"  {caution.level:<6}"))
+    return "\n".join(lines)
+
+
+def _how(forecast: Forecast) -> str:
+    if forecast.n_draws == 1:
+        return "Exact: nothing in this plan has a spread."
+    return (
+        f"{forecast.n_draws} draws, seed {forecast.seed}; a forecast, not a measurement: look at "
+        "the piece before you trust it."
+    )
