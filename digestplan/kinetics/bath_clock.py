@@ -285,6 +285,10 @@ def _by_case(cases: list[tuple[Array, Callable[..., Array]]], *arguments: Array)
     return result
 
 
+def _off_zero(c: Array) -> Array:
+    return np.where(np.abs(c) < _TINY, _TINY, c)
+
+
 # -- cylinder: ∫ dρ/(N(ρ² + c)) and ∫ −4ρ ln ρ dρ/(N(ρ² + c)), c = 1/N − ρ₀² -----------------
 
 
@@ -303,8 +307,7 @@ def _cylinder_reaction(before: Array, after: Array, folds: Array, n: Array) -> A
 
 
 def _cylinder_layer(before: Array, after: Array, folds: Array, n: Array) -> Array:
-    c = 1 / n - before**2
-    c = np.where(np.abs(c) < _TINY, _TINY, c)
+    c = _off_zero(1 / n - before**2)
     cases = [
         (before**2 < _NEAR * c, _cylinder_far),
         (c > 0, _cylinder_open),
@@ -351,7 +354,7 @@ def _cylinder_closed(u0: Array, u1: Array, c: Array, folds: Array, n: Array) -> 
 
 
 def _sphere(before: Array, after: Array, folds: Array, n: Array) -> tuple[Array, Array]:
-    c = 1 / n - before**3
+    c = _off_zero(1 / n - before**3)
     cases = [
         (before**3 < _NEAR * c, _sphere_far),
         (np.abs(c) < _NEAR * after**3, _sphere_near),
