@@ -272,7 +272,7 @@ def describe(
     length = _lengths(weighted)
     _, singular, rows = np.linalg.svd(weighted / length, full_matrices=False)
     determined = bool(singular[-1] > _RANK * singular[0] and np.all(np.any(weighted, axis=0)))
-    spread = float(np.linalg.norm(root * residuals)) / np.sqrt(freedom)
+    spread = float(np.linalg.norm(root * residuals) / np.sqrt(freedom))
     inverse = rows.T / np.where(determined, singular, np.nan)
     covariance = (inverse @ inverse.T) * spread**2 / np.outer(length, length)
     if not determined:
