@@ -1,7 +1,6 @@
 """Standard error and exit statuses: this module alone writes the one and knows the other."""
 
 import os
-import sys
 import traceback
 from collections.abc import Callable
 
@@ -45,7 +44,6 @@ def run(command: Callable[[], int | None]) -> int:
 
 def complain(message: str) -> None:
     """Write one message to standard error, on one line."""
-    print(" ".join(message.splitlines()), file=sys.stderr)
 
 
 def refuse(message: str) -> int:

@@ -12,12 +12,12 @@ _MG_PER_G = 1000.0
 
 
 def substrate_mass(plan: Plan, draws: Draws) -> Array:
-    """Mass of the matrix to be digested, shape (n_draws,). [g]"""
+    """Mass of the matrix to be digested, shape (n_draws,). [g]."""
     return draws.of(plan.sample.wet_mass) * draws.of(plan.sample.substrate_fraction)
 
 
 def label_activity(plan: Plan, draws: Draws) -> Array:
-    """Label activity of the lot in the plan's activity unit, shape (n_draws,). [unit/g]"""
+    """Label activity of the lot in the plan's activity unit, shape (n_draws,). [unit/g]."""
     if plan.activity_unit == "mg":
         return np.full(draws.n_draws, _MG_PER_G)
     label = plan.lot.label_activity
@@ -96,7 +96,7 @@ def weighed_ratio(plan: Plan, draws: Draws, charge: Value, volume: Array | None)
 
 
 def ratio_in_plan_units(plan: Plan, draws: Draws, ratio: Value) -> Array:
-    """Draws of a ratio in the plan's activity unit, shape (n_draws,). [unit/g]"""
+    """Draws of a ratio in the plan's activity unit, shape (n_draws,). [unit/g]."""
     amount = draws.of(ratio)
     unit = ratio.quantity.activity
     if unit == plan.activity_unit or unit is None:
@@ -107,7 +107,7 @@ def ratio_in_plan_units(plan: Plan, draws: Draws, ratio: Value) -> Array:
 
 
 def weighed_mass(plan: Plan, draws: Draws, step: Digest) -> float | None:
-    """Mass of the lot to weigh in for a step, at best estimates. [g]"""
+    """Mass of the lot to weigh in for a step, at best estimates. [g]."""
     charge = step.charge
     if step.charge_as == "charge" and charge.quantity.activity is None:
         return charge.quantity.value

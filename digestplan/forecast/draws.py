@@ -156,7 +156,7 @@ class Draws:
         return self._spread(value.quantity, self.deviate(value.place))
 
     def temperature(self, value: Value) -> Array:
-        """Draws of a temperature of a programme, shape (n_draws,). [K]"""
+        """Draws of a temperature of a programme, shape (n_draws,). [K]."""
         return self._spread(value.quantity, self.deviate(incubator_key(value)))
 
     def optional(self, value: Value | None, otherwise: float) -> Array:

@@ -33,7 +33,7 @@ def limits_of(job: Job, steps: Sequence[StepForecast]) -> tuple[str, ...]:
     digests = [step for step in steps if isinstance(step, DigestForecast)]
     if not digests:
         return ()
-    return tuple([*_holds_up(job, digests), *_makes_uncertain(job, digests)])
+    return (*_holds_up(job, digests), *_makes_uncertain(job, digests))
 
 
 def _holds_up(job: Job, digests: Sequence[DigestForecast]) -> Iterator[str]:

@@ -39,14 +39,14 @@ class Response:
         return self.law.extent(scaled, *(p[draws] for p in self.parameters))
 
     def extent(self, state: State, draws: Draws = ALL) -> Array:
-        """Extent, as the mean over the volume. [1]"""
+        """Extent, as the mean over the volume. [1]."""
         s = self.susceptibility[draws]
         if self.geometry is None or state.local is None:
             return self._law(s * state.dose, draws)
         return self.geometry.mean(self._law(s * state.local, draws))
 
     def extent_at_centre(self, state: State, draws: Draws = ALL) -> Array:
-        """Extent at the centre: what is eaten from its surface keeps a raw core to the end. [1]"""
+        """Extent at the centre: what is eaten from its surface keeps a raw core to the end. [1]."""
         s = self.susceptibility[draws]
         if self.law.name == "erosion":
             return np.where(self._law(s * state.dose, draws) >= 1.0, 1.0, 0.0)
@@ -54,7 +54,7 @@ class Response:
         return self._law(s * dose, draws)
 
     def keep_loss(self, state: State, draws: Draws = ALL) -> Array:
-        """Fraction lost of what must be kept, by the enzyme, heat and acid. [1]"""
+        """Fraction lost of what must be kept, by the enzyme, heat and acid. [1]."""
         s = self.keep_susceptibility[draws]
         if self.geometry is None or state.local is None:
             return keep_loss(s * state.dose + state.heat)

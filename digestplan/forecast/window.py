@@ -97,9 +97,7 @@ def bands(values: Array) -> Array:
     return result
 
 
-def window(
-    ready: Array, too_far: Array, confidence: float, start: datetime | None
-) -> Window:
+def window(ready: Array, too_far: Array, confidence: float, start: datetime | None) -> Window:
     """
     Return the window between ready and too far.
 

@@ -183,6 +183,23 @@ class Course:
         cell = self.cells.cell_at(time)
         return self.within(cell, time - float(self.cells.edges[cell]))
 
+    def at_each(self, times: Array) -> State:
+        """State at a time of its own for each draw, without modes. Shape (n_draws,). [h]."""
+        cells = np.array([self.cells.cell_at(float(time)) for time in times])
+        whole = self.starts[0]
+        parts = [np.flatnonzero(cells == cell) for cell in np.unique(cells)]
+        order = np.argsort(np.concatenate(parts))
+        states = [
+            self.within(int(cells[p[0]]), times[p] - self.cells.edges[cells[p[0]]], p)
+            for p in parts
+        ]
+        joined = {
+            name: np.concatenate([getattr(state, name) for state in states], axis=-1)[..., order]
+            for name in State.__slots__
+            if not name.startswith("modal") and getattr(whole, name) is not None
+        }
+        return State(**joined)
+
     def at_end(self) -> State:
         """State at the end of the programme as written, with its modes."""
         cell = self.cells.cell_at(self.cells.end)

@@ -123,6 +123,16 @@ class Cells:
         result: Array = self.weights @ set_points
         return result
 
+    def temperature_at(self, time: float, set_points: Array) -> float:
+        """Sample temperature at one time, from set points of shape (n_set_points,). [K]."""
+        cell = self.cell_at(time)
+        at_nodes = self.weights[list(self.nodes[cell])] @ set_points
+        if len(at_nodes) == 1:
+            return float(at_nodes[0])
+        begin, end = self.edges[cell], self.edges[cell + 1]
+        share = np.array([(time - begin) / (end - begin)])
+        return float(at_nodes @ node_interpolation(share)[:, 0])
+
 
 @dataclass(frozen=True, slots=True)
 class Leg:

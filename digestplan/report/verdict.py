@@ -18,7 +18,9 @@ def verdict(forecast: Forecast) -> str:
     sentences
         When it is ready and when too far, and which visit meets that.
     """
-    return " ".join(part for part in (_window_sentence(forecast), _visit_sentence(forecast)) if part)
+    return " ".join(
+        part for part in (_window_sentence(forecast), _visit_sentence(forecast)) if part
+    )
 
 
 def _window_sentence(forecast: Forecast) -> str:

@@ -33,9 +33,7 @@ def hours(value: float | None) -> str:
 def day_and_time(time: datetime) -> str:
     """Return a clock time with its day, to the minute."""
     rounded = to_the_minute(time)
-    return (
-        f"{_DAYS[rounded.weekday()]} {rounded.day} {_MONTHS[rounded.month - 1]} {rounded:%H:%M}"
-    )
+    return f"{_DAYS[rounded.weekday()]} {rounded.day} {_MONTHS[rounded.month - 1]} {rounded:%H:%M}"
 
 
 def to_the_minute(time: datetime) -> datetime:

@@ -81,9 +81,7 @@ def run(
     return forecast, Carried(clock, temperature, course.at_end(), liquid, volume)
 
 
-def _charges(
-    step: Digest | Hold, job: Job, carried: Carried
-) -> tuple[dict[float, Array], State]:
+def _charges(step: Digest | Hold, job: Job, carried: Carried) -> tuple[dict[float, Array], State]:
     """Enzyme added by time, and the state of the sample in its new, still empty, liquid."""
     if isinstance(step, Hold):
         return {}, carried.state
@@ -109,7 +107,7 @@ def _set_points(step: Digest | Hold, draws: Draws, carried: Carried) -> Array:
 
 
 def lag_of(step: Digest | Hold, volume: Array | None) -> float:
-    """Time constant with which the sample follows its bath: as stated, or by the volume. [h]"""
+    """Time constant with which the sample follows its bath: as stated, or by the volume. [h]."""
     if step.lag is not None:
         return step.lag.quantity.value
     if volume is None:
@@ -118,7 +116,7 @@ def lag_of(step: Digest | Hold, volume: Array | None) -> float:
 
 
 def concentration_per_ratio(plan: Plan, draws: Draws, volume: Array | None) -> Array | None:
-    """Active enzyme in a bath for a ratio of 1, shape (n_draws,). [g/mL per unit/g]"""
+    """Active enzyme in a bath for a ratio of 1, shape (n_draws,). [g/mL per unit/g]."""
     if volume is None:
         return None
     return substrate_mass(plan, draws) / (label_activity(plan, draws) * volume)
@@ -218,7 +216,7 @@ def _enzyme_factor(job: Job, forever: State) -> Array:
 
 
 def _working_temperature(step: Digest | Hold) -> float:
-    """Temperature at which the step spends most of its enzyme: its warmest set point. [K]"""
+    """Temperature at which the step spends most of its enzyme: its warmest set point. [K]."""
     return max(stretch.temperature.quantity.value for stretch in step.programme)
 
 
