@@ -83,7 +83,7 @@ class Timeline:
         first = np.argmax(reached, axis=0)
         result = np.where(reached[first, np.arange(len(level))], hours[first], np.inf)
         between = np.flatnonzero(np.isfinite(result) & (first > 0))
-        cells = np.array([self.course.cells.cell_at(float(t)) for t in hours])[first[between]]
+        cells = self.course.cells.cells_at(hours[first[between]])
         for cell in np.unique(cells):
             draws = between[cells == cell]
             result[draws] = self._within(measure, level, int(cell), draws, hours, first[draws])

@@ -24,6 +24,8 @@ from digestplan.kinetics.programme import (
 Array = NDArray[np.float64]
 Draws = slice | NDArray[np.intp]
 ALL = slice(None)
+_GONE = 1e-14  # a mode below this share of the enzyme charged no longer matters
+_LEAST = 1e-300
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -169,6 +171,7 @@ class Course:
             np.asarray(intermediate_activity, dtype=float), (n_draws,)
         )
         self._moving: dict[int, _Moving] = {}
+        self._live: dict[int, int] = {}
         self.starts: list[State] = []
         state = start
         for cell in range(cells.n_cells):
@@ -181,11 +184,13 @@ class Course:
     def at(self, time: float) -> State:
         """State at one time for all draws; modes are not carried inside a cell. [h]."""
         cell = self.cells.cell_at(time)
+        if cell + 1 < self.cells.n_cells and time == self.cells.edges[cell + 1]:
+            return self.starts[cell + 1]
         return self.within(cell, time - float(self.cells.edges[cell]))
 
     def at_each(self, times: Array) -> State:
         """State at a time of its own for each draw, without modes. Shape (n_draws,). [h]."""
-        cells = np.array([self.cells.cell_at(float(time)) for time in times])
+        cells = self.cells.cells_at(times)
         whole = self.starts[0]
         parts = [np.flatnonzero(cells == cell) for cell in np.unique(cells)]
         order = np.argsort(np.concatenate(parts))
@@ -285,18 +290,19 @@ class Course:
         assert start.modal_fresh is not None
         assert start.local is not None
         pace = rates.penetration[node, draws]
-        extra = geometry.squares[:, None] * pace
+        live = self._live_modes(cell)
+        extra = geometry.squares[:live, None] * pace
         first = rates.first[node, draws]
         if rates.second is None:
             modal_fresh, lacking = inactivation.first_order(
-                start.modal_fresh, first + extra, elapsed
+                start.modal_fresh[:live], first + extra, elapsed
             )
             modal_intermediate = start.modal_intermediate
         else:
             assert start.modal_intermediate is not None
             modal_fresh, modal_intermediate, lacking, passed = inactivation.two_stage(
-                start.modal_fresh,
-                start.modal_intermediate,
+                start.modal_fresh[:live],
+                start.modal_intermediate[:live],
                 first,
                 rates.second[node, draws],
                 elapsed,
@@ -304,12 +310,32 @@ class Course:
             )
             lacking = lacking + self.intermediate_activity[draws] * passed
         effect = self._coverage(start, draws) * rates.activity[node, draws]
-        local = start.local + given - effect * (geometry.lack @ lacking)
+        local = start.local + given - effect * (geometry.lack[:, :live] @ lacking)
         if not modes:
             return replace(after, local=np.maximum(local, 0.0))
+        assert modal_intermediate is not None
         return replace(
-            after, local=local, modal_fresh=modal_fresh, modal_intermediate=modal_intermediate
+            after,
+            local=local,
+            modal_fresh=self._all_modes(modal_fresh),
+            modal_intermediate=self._all_modes(modal_intermediate),
         )
+
+    def _live_modes(self, cell: int) -> int:
+        """How many of the slowest modes still matter at the start of a cell."""
+        if cell not in self._live:
+            start = self.starts[cell]
+            assert start.modal_fresh is not None and start.modal_intermediate is not None
+            size = np.maximum(np.abs(start.modal_fresh), np.abs(start.modal_intermediate))
+            alive = np.flatnonzero((size > _GONE * np.maximum(start.charged, _LEAST)).any(axis=1))
+            self._live[cell] = int(alive[-1]) + 1 if len(alive) else 1
+        return self._live[cell]
+
+    def _all_modes(self, modes: Array) -> Array:
+        """Modes with those that no longer matter at zero."""
+        assert self.geometry is not None
+        missing = len(self.geometry.squares) - len(modes)
+        return modes if missing == 0 else np.pad(modes, ((0, missing), (0, 0)))
 
     # -- a cell in which the temperature changes ------------------------------------------
 
@@ -330,7 +356,7 @@ class Course:
         self, transfers: tuple[Array, ...], fresh: Array, intermediate: Array
     ) -> tuple[Array, Array]:
         if len(transfers) == 1:
-            return transfers[0] * fresh, np.zeros_like(transfers[0] * fresh)
+            return transfers[0] * fresh, intermediate
         kept, passed, other = transfers
         return kept * fresh, passed * fresh + other * intermediate
 
@@ -362,13 +388,14 @@ class Course:
         assert start.modal_fresh is not None
         assert start.modal_intermediate is not None
         at_nodes, _ = self._clock(cell)
+        live = self._live_modes(cell)
+        modal = (start.modal_fresh[:live], start.modal_intermediate[:live])
         rows = []
         for i, theta in enumerate(at_nodes):
-            decay = np.exp(-geometry.squares[:, None] * np.maximum(theta, 0.0))
-            one = tuple(t[i] for t in transfers)
-            fresh, intermediate = self._carry(one, start.modal_fresh, start.modal_intermediate)
+            decay = np.exp(-geometry.squares[:live, None] * np.maximum(theta, 0.0))
+            fresh, intermediate = self._carry(tuple(t[i] for t in transfers), *modal)
             lacking = (fresh + self.intermediate_activity * intermediate) * decay
-            rows.append(weight[i] * (active[i] - geometry.lack @ lacking))
+            rows.append(weight[i] * (active[i] - geometry.lack[:, :live] @ lacking))
         return np.stack(rows, axis=1)
 
     def _end_of_moving(self, cell: int) -> State:
@@ -388,11 +415,15 @@ class Course:
         assert start.modal_fresh is not None
         assert start.modal_intermediate is not None
         _, theta = self._clock(cell)
-        decay = np.exp(-self.geometry.squares[:, None] * theta)
-        modal = self._carry(at_end, start.modal_fresh, start.modal_intermediate)
+        live = self._live_modes(cell)
+        decay = np.exp(-self.geometry.squares[:live, None] * theta)
+        modal = self._carry(at_end, start.modal_fresh[:live], start.modal_intermediate[:live])
         local = start.local + hours * np.einsum("j,pjn->pn", NODE_WEIGHTS, values.local)
         return replace(
-            after, local=local, modal_fresh=modal[0] * decay, modal_intermediate=modal[1] * decay
+            after,
+            local=local,
+            modal_fresh=self._all_modes(modal[0] * decay),
+            modal_intermediate=self._all_modes(modal[1] * decay),
         )
 
     def _inside_moving(self, cell: int, elapsed: Array | float, draws: Draws) -> State:

@@ -33,8 +33,13 @@ def mean_of_decay(exponent: Array) -> Array:
     ----------
     .. [1] M. Hochbruck and A. Ostermann, Acta Numer. 19, 209, 2010 (phi functions; from memory).
     """
-    safe = np.where(exponent == 0, 1.0, exponent)
-    return np.where(exponent == 0, 1.0, -np.expm1(-safe) / safe)
+    exponent = np.asarray(exponent, dtype=float)
+    return _mean_of(np.expm1(-exponent), exponent)
+
+
+def _mean_of(lost: Array, exponent: Array) -> Array:
+    """Mean of a decay, from e^-x - 1 and x."""
+    return np.divide(-lost, exponent, out=np.ones_like(exponent), where=exponent != 0)
 
 
 def _slope_of_mean(a: Array, b: Array) -> Array:
@@ -94,7 +99,8 @@ def first_order(amount: Array, rate: Array, hours: Array | float) -> tuple[Array
     .. [1] J. P. Henley and A. Sadana, Enzyme Microb. Technol. 7, 50, 1985 (from memory).
     """
     exponent = rate * hours
-    return amount * np.exp(-exponent), amount * hours * mean_of_decay(exponent)
+    lost = np.expm1(-exponent)
+    return amount * (1 + lost), amount * hours * _mean_of(lost, exponent)
 
 
 def two_stage(

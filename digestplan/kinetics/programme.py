@@ -54,9 +54,13 @@ def partial_weights(share: Array) -> Array:
     ----------
     .. [1] P. J. Davis and P. Rabinowitz, Methods of Numerical Integration, 1984 (from memory).
     """
-    powers = share ** np.arange(1, NODES + 1)[:, None]
-    weights: Array = _ANTIDERIVATIVE.T @ powers
+    weights: Array = _ANTIDERIVATIVE.T @ _powers(share)
     return weights
+
+
+def _powers(share: Array) -> Array:
+    """Powers 1 to NODES, by repeated multiplication."""
+    return np.multiply.accumulate(np.broadcast_to(share, (NODES, *share.shape)), axis=0)
 
 
 def node_interpolation(share: Array) -> Array:
@@ -77,7 +81,8 @@ def node_interpolation(share: Array) -> Array:
     ----------
     .. [1] P. J. Davis and P. Rabinowitz, Methods of Numerical Integration, 1984 (from memory).
     """
-    weights: Array = _LAGRANGE.T @ (share ** np.arange(NODES)[:, None])
+    powers = np.vstack([np.ones_like(share)[None], _powers(share)[:-1]])
+    weights: Array = _LAGRANGE.T @ powers
     return weights
 
 
@@ -117,6 +122,11 @@ class Cells:
     def cell_at(self, time: float) -> int:
         """Index of the cell that holds a time; at an edge, of the cell that ends there."""
         return max(0, min(int(np.searchsorted(self.edges, time)) - 1, self.n_cells - 1))
+
+    def cells_at(self, times: Array) -> NDArray[np.intp]:
+        """Index of the cell that holds each of several times [h]."""
+        found = np.searchsorted(self.edges, times) - 1
+        return np.clip(found, 0, self.n_cells - 1)
 
     def temperatures(self, set_points: Array) -> Array:
         """Temperatures at the nodes, shape (n_nodes, n_draws), from set points [K]."""

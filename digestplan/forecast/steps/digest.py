@@ -56,16 +56,24 @@ def run(
     forecast, carried
         The step's forecast, and what it leaves to the next.
     """
-    charges, start = _charges(step, job, carried)
-    if isinstance(step, Digest):
-        liquid = liquid_of(step.environment, job.draws, carried.liquid)
-        volume = None if step.volume is None else job.draws.of(step.volume)
-    else:
-        liquid, volume = carried.liquid, carried.volume
+    liquid, volume = _bath(step, job, carried)
+    course = course_of_step(step, job, carried)
     set_points = _set_points(step, job.draws, carried)
-    cells, rates = _course_of(step, job, liquid, volume, set_points, list(charges))
+    timeline = Timeline(course, job.response, open_ended=open_ended)
+    forecast = _told(step, index, job, carried.clock, timeline, liquid, set_points)
+    temperature = course.cells.end_weights @ set_points
+    clock = carried.clock + course.cells.end
+    return forecast, Carried(clock, temperature, course.at_end(), liquid, volume)
+
+
+def course_of_step(step: Digest | Hold, job: Job, carried: Carried) -> Course:
+    """Take the enzyme through a step's programme, from what the step before left."""
+    charges, start = _charges(step, job, carried)
+    liquid, volume = _bath(step, job, carried)
+    set_points = _set_points(step, job.draws, carried)
+    cells, rates = _cells_and_rates(step, job, liquid, volume, set_points, list(charges))
     by_cell = {0 if after == 0 else cells.cell_at(after) + 1: c for after, c in charges.items()}
-    course = Course(
+    return Course(
         cells,
         rates,
         start,
@@ -74,11 +82,14 @@ def run(
         job.enzyme.values.get("saturation_ratio"),
         job.response.geometry,
     )
-    timeline = Timeline(course, job.response, open_ended=open_ended)
-    forecast = _told(step, index, job, carried.clock, timeline, liquid, set_points)
-    temperature = cells.end_weights @ set_points
-    clock = carried.clock + cells.end
-    return forecast, Carried(clock, temperature, course.at_end(), liquid, volume)
+
+
+def _bath(step: Digest | Hold, job: Job, carried: Carried) -> tuple[Liquid, Array | None]:
+    """The liquid of a step and its volume; a hold keeps those of the step before."""
+    if isinstance(step, Hold):
+        return carried.liquid, carried.volume
+    volume = None if step.volume is None else job.draws.of(step.volume)
+    return liquid_of(step.environment, job.draws, carried.liquid), volume
 
 
 def _charges(step: Digest | Hold, job: Job, carried: Carried) -> tuple[dict[float, Array], State]:
@@ -122,7 +133,7 @@ def concentration_per_ratio(plan: Plan, draws: Draws, volume: Array | None) -> A
     return substrate_mass(plan, draws) / (label_activity(plan, draws) * volume)
 
 
-def _course_of(
+def _cells_and_rates(
     step: Digest | Hold,
     job: Job,
     liquid: Liquid,

@@ -1,0 +1,87 @@
+"""The documents that the interface promises, as JSON schemas."""
+
+_NUMBER = {"type": ["number", "null"]}
+_SHARE = {"type": "number", "minimum": 0, "maximum": 1}
+_CLOCK = {"type": ["string", "null"], "pattern": r"^\d{4}-\d\d-\d\dT\d\d:\d\d:\d\d$"}
+
+
+def record(required, **more):
+    """An object with exactly these keys."""
+    return {
+        "type": "object",
+        "properties": {**required, **more},
+        "required": list(required),
+        "additionalProperties": False,
+    }
+
+
+SPREAD = record({"p05": _NUMBER, "p50": _NUMBER, "p95": _NUMBER})
+WINDOW = record({"opens_h": _NUMBER, "closes_h": _NUMBER, "opens": _CLOCK, "closes": _CLOCK})
+_NUMBERS = {"type": "array", "items": {"type": "number"}, "minItems": 2}
+CURVE = record(
+    {
+        "hours": _NUMBERS,
+        "extent_p05": _NUMBERS,
+        "extent_p50": _NUMBERS,
+        "extent_p95": _NUMBERS,
+        "activity_p50": _NUMBERS,
+        "temperature_c": _NUMBERS,
+    }
+)
+_STEP = {
+    "do": {"enum": ["digest", "hold"]},
+    "start": _CLOCK,
+    "end": _CLOCK,
+    "hours": {"type": "number", "minimum": 0},
+}
+DIGEST = record(
+    {
+        **_STEP,
+        "extent_at_end": SPREAD,
+        "extent_at_centre": SPREAD,
+        "residual_activity_at_end": SPREAD,
+        "keep_loss_at_end": SPREAD,
+        "ceiling": SPREAD,
+        "dose_at_end": record(
+            {"p05": _NUMBER, "p50": _NUMBER, "p95": _NUMBER, "unit": {"type": "string"}}
+        ),
+        "hours_to_target": SPREAD,
+        "never_reaches_target": _SHARE,
+        "hours_to_keep_limit": SPREAD,
+        "window": WINDOW,
+        "curve": CURVE,
+    },
+    ph_at_temperature=_NUMBER,
+    free_calcium_mM=_NUMBER,
+)
+CAUTION = record(
+    {
+        "level": {"enum": ["stop", "care", "note"]},
+        "step": {"type": ["integer", "null"]},
+        "code": {"type": "string", "pattern": "^[a-z0-9-]+$"},
+        "text": {"type": "string", "minLength": 20},
+    }
+)
+VISIT = record(
+    {
+        "from": _CLOCK,
+        "to": _CLOCK,
+        "chance_in_time": _SHARE,
+        "chance_not_ready": _SHARE,
+        "chance_too_far": _SHARE,
+    }
+)
+FORECAST = record(
+    {
+        "digestplan": {"const": 1},
+        "title": {"type": "string"},
+        "draws": {"type": "integer", "minimum": 1},
+        "seed": {"type": "integer"},
+        "confidence": _SHARE,
+        "steps": {"type": "array", "items": DIGEST, "minItems": 1},
+        "visits": {"type": "array", "items": VISIT},
+        "cautions": {"type": "array", "items": CAUTION},
+    },
+    window=WINDOW,
+    limits={"type": "array", "items": {"type": "string"}},
+)
