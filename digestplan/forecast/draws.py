@@ -5,7 +5,7 @@ shifted at random by the seed, so that any number of draws covers each input, an
 inputs, more evenly than chance would.
 """
 
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterable, Iterator, Mapping
 from dataclasses import fields, is_dataclass
 from typing import Any
 
@@ -96,15 +96,19 @@ def uncertain_values(record: Any) -> Iterator[tuple[str, Quantity]]:
     elif isinstance(record, Stretch):
         if record.temperature.quantity.distribution != "exact":
             yield incubator_key(record.temperature), record.temperature.quantity
-    elif isinstance(record, Mapping):
-        for item in record.values():
-            yield from uncertain_values(item)
-    elif isinstance(record, tuple):
-        for item in record:
-            yield from uncertain_values(item)
-    elif is_dataclass(record):
-        for name in fields(record):
-            yield from uncertain_values(getattr(record, name.name))
+    else:
+        for part in _parts(record):
+            yield from uncertain_values(part)
+
+
+def _parts(record: Any) -> Iterable[Any]:
+    if isinstance(record, Mapping):
+        return record.values()
+    if isinstance(record, tuple):
+        return record
+    if is_dataclass(record):
+        return [getattr(record, field.name) for field in fields(record)]
+    return ()
 
 
 def incubator_key(temperature: Value) -> str:
@@ -152,7 +156,7 @@ class Draws:
         return self._deviates.get(key)
 
     def of(self, value: Value) -> Array:
-        """Draws of a value, shape (n_draws,), in its core unit; never below 0 for a positive one."""
+        """Draws of a value, shape (n_draws,), in its core unit; a positive one stays so."""
         return self._spread(value.quantity, self.deviate(value.place))
 
     def temperature(self, value: Value) -> Array:
@@ -167,6 +171,7 @@ class Draws:
         if z is None:
             return np.full(self.n_draws, quantity.value)
         if quantity.distribution == "lognormal":
-            return quantity.value * np.exp(np.log(quantity.spread) * z)
+            log_normal: Array = quantity.value * np.exp(np.log(quantity.spread) * z)
+            return log_normal
         drawn = quantity.value + quantity.spread * z
         return np.maximum(drawn, 0.0) if quantity.value >= 0 else drawn

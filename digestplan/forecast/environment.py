@@ -81,7 +81,8 @@ def ph_in(liquid: Liquid, temperature: Array) -> Array | None:
     assert liquid.ph_at is not None
     here = pk_at(temperature, pk.pk, pk.enthalpy, pk.heat_capacity)
     there = pk_at(liquid.ph_at, pk.pk, pk.enthalpy, pk.heat_capacity)
-    return liquid.ph + here - there
+    moved: Array = liquid.ph + here - there
+    return moved
 
 
 def ph_at(liquid: Liquid, temperature: float) -> float | None:

@@ -97,18 +97,19 @@ def susceptibility_for(
         Shape (n_draws,). [g/(unit h)]
     """
     dose = np.maximum(after.dose, _LEAST)
-    closed = geometry is None or after.local is None
-    if closed and law.name != "two_pool":
+    at_surface = after.local is None or geometry is None
+    if at_surface and law.name != "two_pool":
         return scaled_dose_to(law, extent, parameters(dose)) / dose
-    doses = after.dose[None, :] if closed else after.local
 
     def above(log_scaled: Array) -> Array:
         s = np.exp(log_scaled) / dose
-        reached = law.extent(s * doses, *parameters(s))
-        return (reached[0] if closed else geometry.mean(reached)) - extent
+        if after.local is None or geometry is None:
+            return law.extent(s * after.dose, *parameters(s)) - extent
+        return geometry.mean(law.extent(s * after.local, *parameters(s))) - extent
 
     low, high = np.full(len(dose), np.log(1e-12)), np.full(len(dose), np.log(1e12))
-    return np.exp(rising_root(above, low, high)) / dose
+    susceptibility: Array = np.exp(rising_root(above, low, high)) / dose
+    return susceptibility
 
 
 def _end_of(

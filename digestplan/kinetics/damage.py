@@ -26,7 +26,8 @@ def keep_loss(exponent: ArrayLike) -> Array:
     ----------
     .. [1] Independent first-order losses; common practice.
     """
-    return -np.expm1(-np.asarray(exponent, dtype=float))
+    loss: Array = -np.expm1(-np.asarray(exponent, dtype=float))
+    return loss
 
 
 def melting_rate_eyring(temperature: ArrayLike, enthalpy: ArrayLike, entropy: ArrayLike) -> Array:

@@ -88,7 +88,7 @@ def geometry(shape: str, n_modes: int = N_MODES, half: int = _HALF) -> Geometry:
         roots = n * np.pi
         lack = -2 * (-1.0) ** n * np.sinc(np.outer(x, n))
         volume, whole = 3 * x**2, (1 - x**2) / 6
-    squares = roots**2
+    squares = np.asarray(roots**2, dtype=np.float64)
     left_out = whole - lack[:, :-1] @ (1 / squares[:-1])
     lack[:, -1] = left_out * squares[-1]
     return Geometry(squares, lack, x, w * volume)

@@ -33,7 +33,8 @@ def extent_first_order(scaled_dose: ArrayLike) -> Array:
     ----------
     .. [1] L. Wilhelmy, Ann. Phys. 157, 413, 1850 (from memory).
     """
-    return -np.expm1(-np.asarray(scaled_dose, dtype=float))
+    extent: Array = -np.expm1(-np.asarray(scaled_dose, dtype=float))
+    return extent
 
 
 def dose_for_extent_first_order(extent: ArrayLike) -> Array:
@@ -55,7 +56,8 @@ def dose_for_extent_first_order(extent: ArrayLike) -> Array:
     .. [1] L. Wilhelmy, Ann. Phys. 157, 413, 1850 (from memory).
     """
     with np.errstate(divide="ignore"):
-        return -np.log1p(-np.asarray(extent, dtype=float))
+        scaled: Array = -np.log1p(-np.asarray(extent, dtype=float))
+    return scaled
 
 
 def extent_two_pool(
@@ -149,7 +151,8 @@ def extent_stretched(scaled_dose: ArrayLike, exponent: ArrayLike) -> Array:
     .. [1] R. Kohlrausch, Ann. Phys. 167, 56, 1854 (from memory).
     """
     with np.errstate(over="ignore"):
-        return -np.expm1(-(np.asarray(scaled_dose, dtype=float) ** np.asarray(exponent)))
+        extent: Array = -np.expm1(-(np.asarray(scaled_dose, dtype=float) ** np.asarray(exponent)))
+    return extent
 
 
 def dose_for_extent_stretched(extent: ArrayLike, exponent: ArrayLike) -> Array:
@@ -223,7 +226,8 @@ def dose_for_extent_erosion(extent: ArrayLike, exponent: ArrayLike) -> Array:
     """
     with np.errstate(divide="ignore"):
         log_left = np.log1p(-np.asarray(extent, dtype=float))
-    return -np.expm1(log_left / np.asarray(exponent, dtype=float))
+    scaled: Array = -np.expm1(log_left / np.asarray(exponent, dtype=float))
+    return scaled
 
 
 def extent_michaelis_menten(

@@ -73,7 +73,10 @@ def eyring_factor(
     .. [1] H. Eyring, J. Chem. Phys. 3, 107, 1935 (from memory).
     """
     ratio = np.asarray(temperature) / np.asarray(reference_temperature)
-    return ratio * arrhenius_factor(temperature, activation_enthalpy, reference_temperature)
+    result: Array = ratio * arrhenius_factor(
+        temperature, activation_enthalpy, reference_temperature
+    )
+    return result
 
 
 def q10_factor(temperature: ArrayLike, q10: ArrayLike, reference_temperature: ArrayLike) -> Array:

@@ -1,7 +1,7 @@
 """A forecast as plain text: read in ten seconds, 80 columns, no colour needed."""
 
 import textwrap
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 
 from digestplan.forecast.result import DigestForecast, Forecast, StepForecast
 from digestplan.forecast.window import Spread
@@ -63,7 +63,9 @@ def _step(forecast: Forecast, step: StepForecast) -> str:
     return "\n".join(table)
 
 
-def _rows(forecast: Forecast, step: StepForecast) -> Iterator[tuple[str, Spread, object]]:
+def _rows(
+    forecast: Forecast, step: StepForecast
+) -> Iterator[tuple[str, Spread, Callable[[float | None], str]]]:
     if not isinstance(step, DigestForecast):
         return
     yield "hours to target", step.hours_to_target, words.hours

@@ -99,9 +99,7 @@ def test_a_plan_file_meets_the_reference_scenario(reference, number):
     assert result.n_draws == 1
     assert float(last["extent"]) == pytest.approx(step.extent_at_end.p50, abs=1e-6)
     assert float(last["dose_E_h"]) == pytest.approx(step.dose_at_end.p50, rel=1e-6)
-    assert float(last["E"]) / charged == pytest.approx(
-        step.residual_activity_at_end.p50, abs=1e-6
-    )
+    assert float(last["E"]) / charged == pytest.approx(step.residual_activity_at_end.p50, abs=1e-6)
 
 
 @pytest.mark.source("C", "rate equations stated in ode/scenarios.json; mpmath 34 digits and CVODE")

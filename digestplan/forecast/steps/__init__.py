@@ -1,11 +1,17 @@
 """The steps of a treatment; `run_step` finds the one that a plan asks for."""
 
+from collections.abc import Callable
+from typing import Any
+
 from digestplan.forecast.result import StepForecast
 from digestplan.forecast.steps import digest
 from digestplan.forecast.steps.base import Carried, Job
 from digestplan.plan.model import Step
 
-_RUNNERS = {"digest": digest.run, "hold": digest.run}
+_RUNNERS: dict[str, Callable[..., tuple[Any, Carried]]] = {
+    "digest": digest.run,
+    "hold": digest.run,
+}
 
 
 def run_step(

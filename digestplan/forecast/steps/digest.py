@@ -248,13 +248,15 @@ def _residual(course: Course, state: State) -> Array:
 
 def _curve(timeline: Timeline, set_points: Array) -> Curve:
     course, response = timeline.course, timeline.response
-    extent = bands(timeline.over_time(response.extent))
+    low, middle, high = bands(timeline.over_time(response.extent))
     activity = timeline.over_time(lambda state, _: _residual(course, state))
     nominal = np.median(set_points, axis=1)
     temperature = [course.cells.temperature_at(float(h), nominal) for h in timeline.hours]
     return Curve(
         timeline.hours,
-        *extent,
+        low,
+        middle,
+        high,
         np.median(activity, axis=1),
         np.array(temperature) - 273.15,
     )
