@@ -17,7 +17,7 @@ from digestplan.forecast.environment import nothing_stated
 from digestplan.forecast.run import forecast, prepare
 from digestplan.forecast.steps.base import Carried
 from digestplan.forecast.steps.digest import course_of_step
-from digestplan.kinetics.dose import nothing
+from digestplan.kinetics.state import nothing
 from digestplan.kinetics.temperature import arrhenius_factor
 from digestplan.plan.read import parse_plan
 

@@ -9,7 +9,7 @@ from digestplan.forecast.draws import Draws
 from digestplan.forecast.environment import Liquid, activity_factor
 from digestplan.kinetics import temperature as laws
 from digestplan.kinetics.damage import melting_rate_arrhenius, melting_rate_eyring
-from digestplan.kinetics.dose import Rates
+from digestplan.kinetics.state import Rates
 from digestplan.kinetics.water import stokes_einstein_factor
 from digestplan.plan.model import Enzyme, Plan
 

@@ -15,10 +15,11 @@ from digestplan.forecast.draws import Draws
 from digestplan.forecast.environment import liquid_of
 from digestplan.forecast.response import scaled_dose_to
 from digestplan.kinetics.depth import Geometry
-from digestplan.kinetics.dose import Course, State, nothing
+from digestplan.kinetics.dose import Course
 from digestplan.kinetics.extent import Law
 from digestplan.kinetics.programme import Leg, compile_programme
 from digestplan.kinetics.roots import rising_root
+from digestplan.kinetics.state import State, nothing
 from digestplan.plan.model import KnownRun, Plan
 
 Array = NDArray[np.float64]

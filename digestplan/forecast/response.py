@@ -7,8 +7,8 @@ from numpy.typing import NDArray
 
 from digestplan.kinetics.damage import keep_loss
 from digestplan.kinetics.depth import Geometry
-from digestplan.kinetics.dose import ALL, Draws, State
 from digestplan.kinetics.extent import LAWS, Law
+from digestplan.kinetics.state import ALL, Draws, State
 
 Array = NDArray[np.float64]
 

@@ -17,7 +17,7 @@ from digestplan.forecast.steps.base import Carried, Job
 from digestplan.forecast.steps.digest import concentration_per_ratio
 from digestplan.forecast.window import visit_chances, window
 from digestplan.kinetics.depth import Geometry, geometry
-from digestplan.kinetics.dose import nothing
+from digestplan.kinetics.state import nothing
 from digestplan.plan.model import Digest, Plan
 
 Array = NDArray[np.float64]

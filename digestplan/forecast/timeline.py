@@ -6,9 +6,10 @@ import numpy as np
 from numpy.typing import NDArray
 
 from digestplan.forecast.response import Response
-from digestplan.kinetics.dose import Course, Draws, State
+from digestplan.kinetics.dose import Course
 from digestplan.kinetics.programme import FOR_EVER
 from digestplan.kinetics.roots import rising_root
+from digestplan.kinetics.state import Draws, State
 
 Array = NDArray[np.float64]
 Measure = Callable[[State, Draws], Array]

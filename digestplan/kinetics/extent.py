@@ -257,12 +257,13 @@ def extent_michaelis_menten(
     u, start = np.broadcast_arrays(
         np.asarray(scaled_dose, dtype=float), np.asarray(initial_over_half_saturation, dtype=float)
     )
-    safe = np.where(start > 0, start, 1.0)
+    counts = start > 1e-15  # below that the law is first order to the last digit
+    safe = np.where(counts, start, 1.0)
     left = wrightomega(np.log(safe) + safe - u) / safe
     for _ in range(2):  # Newton on ln y + start (y - 1) = -u takes the last digits back
         y = np.maximum(left, 1e-320)
         left = y - y * (np.log(y) + safe * (y - 1) + u) / (1 + safe * y)
-    result: Array = np.where(start > 0, 1 - left, extent_first_order(u))
+    result: Array = np.where(counts, 1 - left, extent_first_order(u))
     return np.clip(result, 0.0, 1.0)
 
 

@@ -9,8 +9,9 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from digestplan.kinetics.depth import geometry
-from digestplan.kinetics.dose import Course, Rates, nothing
+from digestplan.kinetics.dose import Course
 from digestplan.kinetics.programme import Leg, compile_programme
+from digestplan.kinetics.state import Rates, nothing
 
 COMPUTED = Path(__file__).parents[1] / "reference" / "computed"
 SHAPES = ("slab", "cylinder", "sphere")

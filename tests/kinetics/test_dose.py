@@ -10,9 +10,10 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from digestplan.kinetics.dose import Course, Rates, nothing
+from digestplan.kinetics.dose import Course
 from digestplan.kinetics.extent import LAWS
 from digestplan.kinetics.programme import Leg, compile_programme
+from digestplan.kinetics.state import Rates, nothing
 from digestplan.kinetics.temperature import (
     arrhenius_factor,
     equilibrium_factor,

@@ -9,7 +9,7 @@ from digestplan.forecast.conditions import EnzymeDraws
 from digestplan.forecast.draws import Draws
 from digestplan.forecast.environment import Liquid
 from digestplan.forecast.response import Response
-from digestplan.kinetics.dose import State
+from digestplan.kinetics.state import State
 from digestplan.plan.model import Plan
 
 Array = NDArray[np.float64]

@@ -21,8 +21,9 @@ from digestplan.forecast.steps.base import Carried, Job
 from digestplan.forecast.timeline import Timeline
 from digestplan.forecast.window import bands, on_clock, spread, window
 from digestplan.kinetics.damage import keep_loss
-from digestplan.kinetics.dose import Course, Rates, State, nothing
+from digestplan.kinetics.dose import Course
 from digestplan.kinetics.programme import Cells, Leg, compile_programme
+from digestplan.kinetics.state import Rates, State, nothing
 from digestplan.plan.model import Digest, Hold, Plan
 
 Array = NDArray[np.float64]
