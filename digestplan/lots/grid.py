@@ -9,6 +9,7 @@ from numpy.typing import ArrayLike, NDArray
 
 from digestplan.lots.branches import DEAD, Branches
 from digestplan.lots.history import LABEL
+from digestplan.lots.uncertainty import Result
 
 Array = NDArray[np.float64]
 
@@ -39,6 +40,11 @@ class AssayedFraction:
     uncertainty: float
     degrees_of_freedom: float = np.inf
     scale: Literal["linear", "log"] = "linear"
+
+    @classmethod
+    def of(cls, fraction: Result, at: float) -> "AssayedFraction":
+        """The result of an assay, with the degrees of freedom of its uncertainty."""
+        return cls(at, fraction.value, fraction.uncertainty, fraction.degrees_of_freedom)
 
     def __post_init__(self) -> None:
         if not (np.isfinite(self.fraction) and self.uncertainty > 0):
