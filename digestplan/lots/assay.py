@@ -20,14 +20,18 @@ Way = Literal["extinction", "definition"]
 
 _UNIT_IN_MOLES_PER_HOUR = 60e-6  # 1 U = 1 µmol/min
 _ML_PER_L = 1000.0
+_CM_PER_M = 100.0
 ONE_CM, NEAT = Measured(0.01), Measured(1.0)
 _TOO_DARK = 2.0  # absorbance above which stray light bends many photometers (common practice)
 
-# Which units an absorbance assay can give, and how. FALGPA_U is µmol/min of its own substrate;
-# the others are defined by a change of absorbance.
+# Which units an absorbance assay can give, and how. Those by extinction are all µmol/min, each of
+# its own substrate; the others are defined by a change of absorbance.
 WAYS: Mapping[str, Way] = {
     "U": "extinction",
     "FALGPA_U": "extinction",
+    "TAME_U": "extinction",
+    "ATEE_U": "extinction",
+    "PNA_U": "extinction",
     "BAEE_U": "definition",
     "PEP_U": "definition",
 }
@@ -87,7 +91,7 @@ class Setup:
     dilution
         How many times the stock was diluted before.
     extinction
-        Change of the extinction per mole converted. [L/(mol m)]
+        Change of the extinction coefficient as substrate is converted. [L/(mol cm)]
     definition
         For a unit that is defined by a change of absorbance.
     enzyme_concentration
@@ -303,7 +307,7 @@ def _per_volume(v: Mapping[str, Any], setup: Setup) -> Any:
         change = -change
     scale = v["total volume"] / v["sample volume"] * v["dilution"]
     if "extinction" in v:
-        moles_per_litre = change / (v["extinction"] * v["path"])
+        moles_per_litre = change / (v["extinction"] * v["path"] * _CM_PER_M)
         return moles_per_litre / _ML_PER_L / _UNIT_IN_MOLES_PER_HOUR * scale
     defined = setup.definition
     assert defined is not None

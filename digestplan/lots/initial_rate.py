@@ -95,9 +95,10 @@ def initial_rate(hours: ArrayLike, absorbance: ArrayLike, *, name: str = "") -> 
     Notes
     -----
     A trace bends where the quadratic term of a parabola through all of its readings is
-    significant at 1 % (5 % with fewer than ten readings). It is then read as a parabola, a cubic, a first-order approach to a
-    plateau, and a straight line that breaks; the slopes at the start are averaged by their Akaike
-    weights, and their differences are part of the standard error [1]_.
+    significant at 1 % (5 % with fewer than ten readings). It is then read as a parabola, a cubic,
+    a first-order approach to a plateau, and a straight line that breaks; the slopes at the start
+    are averaged by their Akaike weights, and their differences are part of the standard error
+    [1]_.
 
     References
     ----------

@@ -32,7 +32,7 @@ NADH = Setup(
     sample_volume=Measured(0.02, 0.0003),
     path=Measured(0.01, 0.00005),
     dilution=Measured(50.0),
-    extinction=Measured(622_000.0, 6_000.0),  # 6.22 L/(mmol cm)
+    extinction=Measured(6_220.0, 60.0),
 )
 BAEE = Setup(
     "BAEE_U",
@@ -74,7 +74,7 @@ def test_the_budget_lists_every_input():
     assert found.budget[0].name == "sample volume"
     relative = (0.0003 / 0.02) ** 2 / (found.uncertainty / found.value) ** 2
     assert lines["sample volume"].share == pytest.approx(relative, rel=1e-9)
-    assert lines["extinction"].sensitivity == pytest.approx(-found.value / 622_000, rel=1e-9)
+    assert lines["extinction"].sensitivity == pytest.approx(-found.value / 6_220, rel=1e-9)
     assert "dilution" not in lines  # exact
 
 
