@@ -15,6 +15,7 @@ from digestplan.kinetics.bath_clock import bath_extent, bath_time
 
 Array = NDArray[np.float64]
 Values = Array | float
+_ALL = slice(None)
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -127,13 +128,20 @@ class BathCourse:
         rows = zip(self.baths, self.spent, strict=True)
         return np.array([bath.concentration - bath.strength * spent for bath, spent in rows])
 
-    def at(self, time: float) -> Array:
-        """Extents at one time; before the start and after the end they stand still [h]."""
-        number = int(np.searchsorted(self.edges, time, side="right")) - 1
-        if number < 0 or number >= len(self.stretches):
-            still: Array = self.extents[0 if number < 0 else -1]
-            return still
-        return _extent(self, number, time - float(self.edges[number]))
+    def at(self, time: float, draws: slice = _ALL) -> Array:
+        """Extents at one time [h]; before the start and after the end they stand still."""
+        extents: Array = self.curve([time], draws)[0]
+        return extents
+
+    def curve(self, times: Sequence[float] | Array, draws: slice = _ALL) -> Array:
+        """Extents at many times [h], shape (n_times, n_draws); some draws do for a picture."""
+        hours = np.clip(np.asarray(times, dtype=float), 0.0, self.edges[-1])
+        numbers = np.searchsorted(self.edges[1:-1], hours, side="right")
+        curve = np.empty((len(hours), *self.extents[0, draws].shape))
+        for number in np.unique(numbers):
+            here = numbers == number
+            curve[here] = _extents(self, int(number), hours[here] - self.edges[number], draws)
+        return curve
 
     def time_for_extent(self, target: Values) -> Array:
         """
@@ -171,9 +179,14 @@ def _conditions(course: BathCourse, number: int) -> tuple[Array, Array, tuple[Ar
     return course.extents[course.bounds[which]], bath.demand(course.calcium), wholes
 
 
-def _extent(course: BathCourse, number: int, hours: float) -> Array:
+def _extents(course: BathCourse, number: int, hours: Array, draws: slice = _ALL) -> Array:
+    """Extents after some hours in a stretch, shape (n_hours, n_draws)."""
     start, demand, wholes = _conditions(course, number)
-    return bath_extent(hours, course.extents[number], start, demand, wholes, course.shape)
+    begun = course.extents[number]
+    given = [np.broadcast_to(a, begun.shape)[draws] for a in (begun, start, demand, *wholes)]
+    many, each = [np.tile(a, len(hours)) for a in given], np.repeat(hours, len(given[0]))
+    extents = bath_extent(each, many[0], many[1], many[2], many[3:], course.shape)
+    return extents.reshape(len(hours), -1)
 
 
 def run_baths(
@@ -227,7 +240,7 @@ def run_baths(
     amounts = [np.broadcast_to(np.asarray(a, dtype=float), n_draws) for a in (calcium, carbonate)]
     course = BathCourse(edges, extents, bounds, tuple(row), tuple(baths), shape, *amounts)
     for number, stretch in enumerate(row):
-        extents[number + 1] = _extent(course, number, stretch.hours)
+        extents[number + 1] = _extents(course, number, np.array([stretch.hours]))[0]
     return course
 
 

@@ -247,7 +247,8 @@ def bath_extent(
     wanted = np.where(over, 0.0, hours)
 
     def surplus(share: Array) -> Array:
-        return clock(first + share * span) - origin - wanted
+        since_fresh = np.maximum(clock(first + share * span), 0.0)
+        return np.sqrt(since_fresh) - np.sqrt(origin + wanted)  # nearly a straight line
 
     share = rising_root(surplus, np.zeros_like(span), np.ones_like(span), tolerance=1e-13)
     extent = np.clip(extent_at_folds(first + share * span, start, demand), begun, limit)

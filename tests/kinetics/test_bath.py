@@ -98,6 +98,10 @@ def test_time_for_extent_lies_on_the_course():
     for edge, extents in zip(course.edges, course.extents, strict=True):
         assert course.at(float(edge)) == approx(extents, abs=1e-14)
     assert course.at(1e9) == approx(course.extents[-1])
+    assert course.at(-1.0) == approx(course.extents[0])
+    clock = [0.0, 0.7, 1.5, 1.9, 4.0, 9.0]
+    assert course.curve(clock) == approx(np.array([course.at(t) for t in clock]), rel=1e-12)
+    assert course.at(1.5, slice(1, 3)) == approx(course.at(1.5)[1:3], rel=1e-12)
 
 
 def test_waiting_for_ever():
