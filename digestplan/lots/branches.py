@@ -7,7 +7,7 @@ the nodes of a product rule, or evenly spread draws where there are too many dim
 """
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 import numpy as np
 from numpy.typing import NDArray
@@ -61,6 +61,7 @@ class Branches:
     deviates: Mapping[Dimension, Array]
     weights: Array
     exact: bool
+    _terms: dict[float, tuple[Array, Array]] = field(default_factory=dict, repr=False)
 
     def terms(self, time: float) -> tuple[Array, Array]:
         """
@@ -69,12 +70,14 @@ class Branches:
         ln(remaining) is ``offset + kernel`` where the label is the kernel, else
         ``offset - factor * exp(kernel)``. Both have shape (n_branches, 1).
         """
-        taken = losses(self.history, self.deviates, time, len(self.weights))
-        factor = np.zeros(len(self.weights))
-        if self.kernel != LABEL:
-            factor = taken.pop(self.kernel, factor)
-        offset = -np.sum(list(taken.values()), axis=0)
-        return offset[:, None], factor[:, None]
+        if time not in self._terms:
+            taken = losses(self.history, self.deviates, time, len(self.weights))
+            factor = np.zeros(len(self.weights))
+            if self.kernel != LABEL:
+                factor = taken.pop(self.kernel, factor)
+            offset = -np.sum(list(taken.values()), axis=0)
+            self._terms[time] = offset[:, None], factor[:, None]
+        return self._terms[time]
 
     def below(self, x: Array, time: float) -> Array:
         """Probability along each branch that ln(remaining) lies below x at a time."""

@@ -13,8 +13,8 @@ from digestplan.lots.uncertainty import Result
 
 Array = NDArray[np.float64]
 
-_N_BINS = 600
-_COARSE = 150  # bins while it is being found where the probability is
+_N_BINS = 400
+_COARSE = 100  # bins while it is being found where the probability is
 _TAIL = 1e-7  # probability beyond the ends of a grid
 _PASSES = 8
 
