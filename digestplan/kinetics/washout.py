@@ -150,12 +150,8 @@ def local_uptake(theta: Values, place: Values, shape: str) -> Array:
 def _boundary_layer(theta: Array, x: Array, d: int) -> Array:
     from scipy.special import erfc
 
-    root = np.sqrt(np.maximum(theta, 1e-300))
-    z = (1 - x) / (2 * root)
-    layer: Array = x ** (-(d - 1) / 2) * erfc(z)
-    if d == 2:
-        layer += (1 - x) * root / (4 * x**1.5) * _integrated_erfc(z)
-    return layer
+    z = (1 - x) / (2 * np.sqrt(np.maximum(theta, 1e-300)))
+    return np.asarray(x ** (-(d - 1) / 2) * erfc(z))
 
 
 def _mode(z: Array, d: int) -> Array:

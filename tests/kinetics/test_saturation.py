@@ -5,7 +5,16 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
+from digestplan.kinetics.chelation import (
+    DIHYDROGEN_PHOSPHATE_CALCIUM,
+    PHOSPHATE_PKS,
+    form_share,
+    free_metal,
+    phosphate_constant,
+    phosphate_pks,
+)
 from digestplan.kinetics.saturation import STRONG, brushite_index, calcium_at_saturation
+from digestplan.kinetics.solution import Buffer, davies_term
 from digestplan.kinetics.stoichiometry import molar_mass
 
 approx = pytest.approx
@@ -54,6 +63,23 @@ def test_saturation_as_summed_elsewhere():
         calcium, ph = calcium_at_saturation(1.0, pk, pair)
         assert grams(calcium) / 10 == approx(percent, abs=0.05)
         assert ph == approx(end, abs=0.05)
+
+
+@pytest.mark.parametrize("acid", [0.2, 1.0])
+def test_saturated_bath_is_in_equilibrium(acid):
+    """Put together from its totals by the other formulas, the bath is saturated and neutral."""
+    calcium, ph = calcium_at_saturation(acid, STRONG)
+    phosphate, strength = calcium / 1.5, 0.3
+    for _ in range(100):
+        free = float(free_metal(calcium, phosphate, phosphate_constant(ph, strength)))
+        unbound, term = phosphate - (calcium - free), davies_term(strength, 298.15)
+        once = form_share(ph, phosphate_pks(strength), 1)
+        pair = free * unbound * once * 10 ** (DIHYDROGEN_PHOSPHATE_CALCIUM - 4 * term)
+        charge, square = Buffer(unbound, PHOSPHATE_PKS).charges(np.asarray(ph), term)
+        proton = 10 ** (term - ph)
+        strength = float(4 * free + pair + acid + proton + unbound * square) / 2
+    assert brushite_index(free, unbound, ph, strength) == approx(0, abs=1e-5)
+    assert 2 * free + pair + proton + unbound * charge == approx(acid, rel=1e-5)
 
 
 @settings(deadline=None, derandomize=True, max_examples=6)

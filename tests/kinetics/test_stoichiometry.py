@@ -199,6 +199,8 @@ def test_pressure_in_a_closed_tube():
     assert large == approx(np.array([3.1, 0.4]), abs=0.06)
     small = closed_vessel_pressure(0.063e-3, 0.3, np.array([0.0, 1.2]), 298.15) / ATMOSPHERE
     assert small == approx(np.array([5.1, 1.2]), abs=0.06)
+    cold = closed_vessel_pressure(0.63e-3, 5.0, 45.0, 277.15) / ATMOSPHERE
+    assert 0.5 < cold / large[1] < 0.6  # cold water holds nearly twice as much gas
 
 
 @pytest.mark.source("P", "Ariffin et al. 2019, Cell Tissue Bank 20:527: residual calcium")

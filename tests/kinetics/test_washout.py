@@ -97,7 +97,7 @@ def test_diffusivity_of_acid_and_salt():
 
 @pytest.mark.parametrize("shape", SHAPES)
 def test_modes_of_the_depth_model_are_the_same(shape):
-    """Two rooms of the house that need the modes of an endless bath agree on them."""
+    """The depth model and the washout use the same modes of an endless bath."""
     squares = geometry(shape).squares
     roots = bath_roots(np.zeros(1), shape, len(squares))[:, 0]
     assert roots**2 == approx(squares, rel=1e-13)
