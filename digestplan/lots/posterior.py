@@ -256,7 +256,10 @@ def _with_plan(history: History, now: float, planned: Stretch | None) -> History
     past = tuple(
         replace(s, hours=min(s.hours, now - s.start)) for s in history.stretches if s.start < now
     )
-    ahead = planned or (max(past, key=lambda s: s.start + s.hours) if past else None)
+    last = max(past, key=lambda s: s.start + s.hours, default=None)
+    if last is not None and last.start + last.hours < now:  # it is still where it was
+        past += (replace(last, start=last.start + last.hours, hours=now - last.start - last.hours),)
+    ahead = planned or last
     past_only = replace(
         history, stretches=past, thaws=tuple(t for t in history.thaws if t.at <= now)
     )

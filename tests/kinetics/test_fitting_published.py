@@ -109,7 +109,6 @@ def test_skew_profile_limits(name):
     np.testing.assert_allclose(limits, EXPECTED["bod"]["profile_95"][name], rtol=1e-5)
 
 
-@pytest.mark.source("P", BOD)
 def test_a_limit_that_the_data_do_not_set():
     """At 99.9 % the rate of the rise has no upper limit: it is infinite, not a number."""
     model, demand, fit = bod()
@@ -173,7 +172,6 @@ def test_slope_over_inverse_temperature():
     assert -line["slope"] * 8.31446261815324e-3 == pytest.approx(60.3204324, rel=1e-7)
 
 
-@pytest.mark.source("P", PUROMYCIN)
 def test_no_profile_without_an_optimum():
     """Limits about a fit that did not arrive are refused."""
     conc, rate = columns("puromycin.csv", "conc_ppm", "rate_counts_per_min2", state="treated")

@@ -387,6 +387,21 @@ def test_everything_known_leaves_no_spread():
         assert remaining.percentile(p) == pytest.approx(known, rel=2e-3)
 
 
+def test_a_lot_stays_where_it_was():
+    """After its last recorded stretch a lot is taken to be kept as in that stretch."""
+    longer = replace(
+        TWO_PLACES,
+        stretches=(TWO_PLACES.stretches[0], replace(TWO_PLACES.stretches[1], hours=2 * YEAR)),
+    )
+    later = NOW + YEAR / 2
+
+    told = posterior(TWO_PLACES, (), later).remaining
+    meant = posterior(longer, (), later).remaining
+
+    assert told.percentile(50) == pytest.approx(meant.percentile(50), rel=1e-9)
+    assert told.percentile(50) < posterior(TWO_PLACES, (), NOW).remaining.percentile(50)
+
+
 def test_flags():
     """Storage below 0 °C is flagged, and an assay in the future refused."""
     frozen = replace(
