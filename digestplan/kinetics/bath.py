@@ -16,6 +16,7 @@ from digestplan.kinetics.bath_clock import bath_extent, bath_time
 Array = NDArray[np.float64]
 Values = Array | float
 _ALL = slice(None)
+_NO_DEMAND = 1e-14  # of a sample without mineral
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -330,7 +331,7 @@ def change_times(
     rest, extent = list(stretches), np.atleast_1d(np.asarray(start, dtype=float))
     while len(times) < most:
         course = run_baths([bath], [rest], calcium, 0.0, shape, extent)
-        target = course.extents[0] + share / bath.demand(course.calcium)
+        target = course.extents[0] + share / np.maximum(bath.demand(course.calcium), _NO_DEMAND)
         spent = np.sort(np.where(target <= 1, course.time_for_extent(target), np.inf))
         middle = float(spent[(len(spent) - 1) // 2])
         if not middle < course.edges[-1]:

@@ -156,6 +156,16 @@ def test_large_bath_is_never_changed():
     assert change_times(Bath(1.0, 100.0, 1.7), [stretch(50.0, "slab")], 6e-3, "slab") == ()
 
 
+def test_sample_without_mineral():
+    """Where there is no mineral, nothing is spent, nothing changed and nothing given off."""
+    bath, one = Bath(0.5, 10.0, 1.7), stretch(5.0, "slab")
+    assert change_times(bath, [one], 0.0, "slab") == ()
+    course = run_baths([bath], [[one]], 0.0, 0.0, "slab")
+    assert course.spent[0, 0] == 0
+    assert course.reagent_left[0, 0] == 0.5
+    assert course.calcium_released[0, 0] == 0
+
+
 @pytest.mark.source("P", "Study of acid strength for bone collagen: 200 mg chips, 1.0 N HCl, 4 mL")
 def test_chips_in_normal_acid():
     """200 mg chips are done within a factor of 3 of 16 h, and 55 % of the bath is spent then.
