@@ -117,7 +117,7 @@ def mass_ratio_of(text: str) -> tuple[Decimal, Decimal] | None:
     return (Decimal(match[1]), Decimal(match[2])) if match else None
 
 
-_SPAN = re.compile(r"\s*+(\d++(?:\.\d++)?)\s*+([A-Za-z]++)", re.ASCII)
+_SPAN = re.compile(r"\s*+(\d++(?:\.\d++)?)(?![eE]\d)\s*+([A-Za-z]++)", re.ASCII)
 
 
 def time_parts_of(text: str) -> list[Amount] | None:

@@ -12,23 +12,19 @@ _IGNORE = re.ASCII | re.IGNORECASE
 _COMMA = re.compile(r"\d,\d")
 _THOUSANDS = re.compile(r"(?:[^,]*[^\d,.])?[1-9]\d{0,2}(?:,\d{3})+(?![\d,]).*", re.ASCII)
 
-Hints = tuple[tuple[re.Pattern[str], str], ...]
+Hints = tuple[tuple[str, str], ...]
 
 
-def _table(*rows: tuple[str, str], flags: int = _IGNORE) -> Hints:
-    return tuple((re.compile(said, flags), hint) for said, hint in rows)
-
-
-# What the whole text looks like, and what is said of it. {wanted} ends a message, {spread} is a
-# value with a spread. "⁄" is what normal form makes of ½.
-_FOR_ALL = _table(
+# What the whole text looks like (compiled when first needed), and what is said of it. {wanted}
+# ends a message, {spread} is a value with a spread. "⁄" is what normal form makes of ½.
+_FOR_ALL = (
     (r"[+-]?(?:nan|inf|infinity|∞)\b.*", "is no finite number; {wanted}"),
     (
         r"(?:~|≈|∼|<|>|≤|≥|ca\.?|c\.|circa|about|approx\w*+\.?)\s*+\d.*",
         "is not definite; write the value with its spread, such as {spread}",
     ),
     (
-        r".*\d\s*+[x×*]\s*+10\b.*|[+-]?\d++\s*+(?:\^|\*\*).*",
+        r".*\d\s*+[x×*]\s*+10\s*+(?:\^|\*\*|-?\d).*|[+-]?\d++\s*+(?:\^|\*\*).*",
         'has a power; write a power of ten with e, such as "3e-11"',
     ),
     (r".*⁄.*", "has a fraction; write it with a decimal point, such as 0.5"),
@@ -37,7 +33,7 @@ _FOR_ALL = _table(
         "is a range; write one value with its spread, such as {spread}",
     ),
 )
-_FOR_TIMES = _table(
+_FOR_TIMES = (
     (r"over ?night|o/n", 'says no time; write how long, such as "16 h"'),
     (r"(?:over the )?week ?end", 'says no time; write how long, such as "64 h"'),
     (r"\d++:\d\d(?::\d\d)?", 'can be read in two ways; write it such as "2 h 30 min"'),
@@ -45,7 +41,7 @@ _FOR_TIMES = _table(
     (r".*[a-z]\s*+\d++", 'has a number without its unit; write it such as "2 h 30 min"'),
 )
 _NO_TEMPERATURE = 'says no temperature; write it, such as "{}"'
-_FOR_TEMPERATURES = _table(
+_FOR_TEMPERATURES = (
     (
         r".*\d\s*+(?:°|deg\.?|degrees?)?\s*+F(?:ahrenheit)?",
         "is on the Fahrenheit scale; write degrees Celsius, such as 37 degC",
@@ -59,19 +55,17 @@ _FOR_TEMPERATURES = _table(
     (r"(?:in the )?freezer", _NO_TEMPERATURE.format("-20 degC")),
     (r"body temp(?:erature|\.)?", _NO_TEMPERATURE.format("37 degC")),
 )
-_FOR_CONCENTRATIONS = _table(
-    (r".*\d\s*+m?N", "is a normality, which depends on the reaction; write mol/L"), flags=re.ASCII
+_FOR_CONCENTRATIONS = (
+    (r".*\d\s*+(?-i:m?N)", "is a normality, which depends on the reaction; write mol/L"),
 )
-_FOR_RATIOS = _table(
-    (r"\d++\s*+/\s*+\d++", 'can be read in two ways; write it such as "1:50"'),
-)
-_FOR_NUMBERS = _table(
+_FOR_RATIOS = ((r"\d++\s*+/\s*+\d++", 'can be read in two ways; write it such as "1:50"'),)
+_FOR_NUMBERS = (
     (
         r".*\d\s*+(?:m?AU|m?OD|abs)",
         "has a unit, but an absorbance has none; write the number alone; {wanted}",
     ),
 )
-_FOR_ACTIVITIES = _table(
+_FOR_ACTIVITIES = (
     (
         r".*\b(?:units?|IU)\b.*",
         "does not say which unit of activity; write one of "
@@ -100,7 +94,7 @@ def hint_for(text: str, kind: Kind) -> str | None:
     if _COMMA.search(text):
         return _comma(text)
     for said, hint in (*_FOR_ALL, *_hints_of(kind)):
-        if said.fullmatch(text):
+        if re.fullmatch(said, text, _IGNORE):
             return hint.format(wanted=kind.wanted, spread=_spread(kind))
     return None
 

@@ -24,7 +24,6 @@ _READS_WELL = {
     "1/d": (0.1, 1000.0),
 }
 _SMALLEST_PLAIN, _LARGEST_PLAIN = Decimal("1e-4"), Decimal("1e6")
-_SPREAD_DIGITS = 2
 
 
 def format_quantity(
@@ -71,7 +70,7 @@ def format_quantity(
     tail = f" {unit}" if unit else ""
     if quantity.distribution == "normal":
         deviation = step.from_core(quantity.spread)
-        return f"{number} ± {rounded(deviation, min(digits, _SPREAD_DIGITS))}{tail}"
+        return f"{number} ± {rounded(deviation, digits - 1)}{tail}"
     if quantity.distribution == "lognormal":
         return f"{number}{tail} ×/ {rounded(Decimal(quantity.spread), digits)}"
     return number + tail
@@ -92,6 +91,8 @@ def _scales(quantity: Quantity, kind: str, unit: str) -> tuple[Scale, Scale]:
 
 def rounded(number: Decimal, digits: int) -> str:
     """Return a number with so many significant digits, without zeros that say nothing."""
+    if not number.is_finite():
+        return str(float(number))
     if number == 0:
         return "0"
     text = f"{number:.{max(digits, 1) - 1}e}"

@@ -12,7 +12,7 @@ from digestplan.quantities.naming import named
 from digestplan.quantities.units import Unit, UnknownUnitRefusal, resolve, weight_per_volume
 from digestplan.quantities.wording import Refusal, plain
 
-_EXACT = Context(prec=60, Emax=10**9, Emin=-(10**9))
+_EXACT = Context(prec=60, Emax=99_999, Emin=-99_999)
 _ZERO = Decimal(0)
 _ZERO_CELSIUS = Decimal("273.15")
 

@@ -7,7 +7,6 @@ is answered from a cache. pint never sees anything but words of our own table an
 from dataclasses import dataclass
 from fractions import Fraction
 from functools import cache, lru_cache
-from importlib.resources import files
 from typing import Any
 
 from digestplan.quantities.assays import ASSAY_UNITS
@@ -97,6 +96,8 @@ def _is_mass(word: str) -> bool:
 
 @cache
 def _lines() -> tuple[str, ...]:
+    from importlib.resources import files
+
     text = files("digestplan.quantities").joinpath("units.txt").read_text(encoding="utf-8")
     lines = (line.partition("#")[0].strip() for line in text.splitlines())
     return tuple(line for line in lines if line)
