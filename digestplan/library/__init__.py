@@ -1,1 +1,43 @@
-"""."""
+"""What is known: enzymes, materials, buffers, reagents and cautions, each value with its source."""
+
+from digestplan.library.load import (
+    SECTIONS,
+    SOURCE_KINDS,
+    Acid,
+    BufferEntry,
+    EnzymeEntry,
+    KnownRunEntry,
+    LibraryValue,
+    MaterialEntry,
+    ReagentEntry,
+    Storage,
+    UnknownKey,
+    buffer,
+    enzyme,
+    keys,
+    known_run,
+    material,
+    near,
+    reagent,
+)
+
+__all__ = [
+    "SECTIONS",
+    "SOURCE_KINDS",
+    "Acid",
+    "BufferEntry",
+    "EnzymeEntry",
+    "KnownRunEntry",
+    "LibraryValue",
+    "MaterialEntry",
+    "ReagentEntry",
+    "Storage",
+    "UnknownKey",
+    "buffer",
+    "enzyme",
+    "keys",
+    "known_run",
+    "material",
+    "near",
+    "reagent",
+]
