@@ -156,7 +156,6 @@ _PHYSICAL = (
     Kind("energy", "a molar energy", "52 kJ/mol", (_ENERGY,)),
     _signed("enthalpy", "a molar enthalpy", "47 kJ/mol", _ENERGY),
     _signed("entropy", "a molar entropy", "1.46 kJ/(mol K)", _ENTROPY),
-    _signed("enthalpy", "a molar enthalpy", "-8 kJ/mol", _ENERGY),
     _signed("heat_capacity", "a molar heat capacity", "-4 kJ/(mol K)", _ENTROPY),
     Kind("rate", "a rate", "0.03 1/h", (Form("1/h", ("1/h",), ("1/min", "1/s", "1/d")),)),
     _positive(
