@@ -16,7 +16,7 @@ NUMBER = r"[+-]?(?:\d++(?:\.\d*+)?|\.\d++)(?:[eE][+-]?\d{1,3}(?!\d))?"
 _AMOUNT = re.compile(rf"({NUMBER})\s*+(.*+)", re.ASCII)
 _SPREAD = re.compile(r"\s*+(±|\+\s*+/\s*+-|\+-|[x×X]\s*+/)\s*+", re.ASCII)
 _BRACKETED = re.compile(rf"\(\s*+({NUMBER})\s*+(?:±|\+/-|\+-)\s*+({NUMBER})\s*+\)(.*+)", re.ASCII)
-_RATIO = re.compile(rf"({NUMBER})\s*+:\s*+({NUMBER})", re.ASCII)
+_RATIO = re.compile(rf"({NUMBER})\s*+:\s*+({NUMBER})(?:\s*+(?:w/w|\(w/w\)))?", re.ASCII)
 
 _SUPERSCRIPT = re.compile("[⁺⁻]?[⁰¹²³⁴⁵⁶⁷⁸⁹]+")
 _LIFTED = str.maketrans("⁺⁻⁰¹²³⁴⁵⁶⁷⁸⁹", "+-0123456789")

@@ -64,7 +64,7 @@ class Kind:
     bare
         Whether a number without a unit is a value.
     percent
-        What "%" means: ``percent``, ``w/v`` or None where it is refused.
+        What "%" alone means: ``w/w`` (or any plain share), ``w/v``, or None where it is refused.
     scale
         ``ratio`` where zero means nothing at all, so that a factor of spread makes sense;
         ``interval`` where it does not; ``whole`` for a count, which has no spread.
@@ -80,7 +80,7 @@ class Kind:
     high_inclusive: bool = True
     bounds: str = ""
     bare: bool = False
-    percent: Literal["percent", "w/v"] | None = None
+    percent: Literal["w/w", "w/v"] | None = None
     scale: Literal["ratio", "interval", "whole"] = "ratio"
     display: tuple[str, ...] = field(init=False)
 
@@ -188,7 +188,7 @@ _BARE = (
         high=1.0,
         bounds="between 0 and 1",
         bare=True,
-        percent="percent",
+        percent="w/w",
     ),
     Kind(
         "active_fraction",
@@ -198,7 +198,7 @@ _BARE = (
         high=1.5,
         bounds="between 0 and 1.5",
         bare=True,
-        percent="percent",
+        percent="w/w",
     ),
     Kind(
         "ph",
@@ -240,7 +240,7 @@ _ENZYME = (
             Form("{}/g", ("{}/mg", "{}/g"), activity=_ASSAY),
             Form("mg/g", ("mg/g",), ("g/g",), activity="mg", by_mass=True),
         ),
-        percent="percent",
+        percent="w/w",
     ),
     Kind(
         "charge",

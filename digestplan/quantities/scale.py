@@ -18,7 +18,6 @@ _ZERO_CELSIUS = Decimal("273.15")
 
 _CELSIUS = re.compile(r"(?:°|deg(?:rees?)?[._]?)?\s*+[Cc](?:elsius)?")
 _KELVIN = re.compile(r"K|[Kk]elvin")
-_PERCENT_OF = {"percent": "w/w", "w/v": "w/v"}
 _PERCENT = re.compile(r"(?:%|percent)\s*+(?:\(\s*+([wv]/[wv])\s*+\)|([wv]/[wv]))?")
 
 
@@ -117,12 +116,14 @@ def _temperature_scale(kind: Kind, unit: str, *, difference: bool) -> Scale:
 def _percent_scale(kind: Kind, of: str | None) -> Scale:
     if of == "v/v":
         raise Refusal("is a share of volumes, which says no mass; write % w/v or mol/L")
-    if kind.percent is None or of not in (None, _PERCENT_OF[kind.percent]):
-        raise Refusal(f"is a percentage; {kind.wanted}")
-    unit = resolve("percent") if kind.percent == "percent" else weight_per_volume()
-    forms = (form for form in kind.forms if "{}" not in form.unit)
-    form = next(form for form in forms if resolve_form(form).dimensions == unit.dimensions)
-    return _to_form(unit, form, None)
+    meant = of or kind.percent
+    unit = resolve("percent") if meant == "w/w" else weight_per_volume()
+    for form in kind.forms:
+        if "{}" not in form.unit and resolve_form(form).dimensions == unit.dimensions:
+            if meant:
+                return _to_form(unit, form, None)
+            raise Refusal("is a percentage, which can be read in two ways; write % w/v")
+    raise Refusal(f"is a percentage; {kind.wanted}")
 
 
 def _resolved(kind: Kind, unit: str) -> Unit:

@@ -39,6 +39,7 @@ def test_the_message_of_the_interface():
         ("3 m L", "volume", "is not a volume; a volume is wanted here"),
         ("7.5 M", "ph", "has a unit, which is not wanted here; a pH is wanted here, such as 7.5"),
         ("10 %", "number", "is a percentage; a number is wanted"),
+        ("0.25 %", "enzyme_concentration", "write % w/v"),
         ("10 %", "mass", "is a percentage; a mass is wanted"),
         ("10 % w/v", "ratio", "is a percentage; a ratio"),
         ("10 % w/w", "reagent_concentration", "is a percentage; a concentration"),
