@@ -62,7 +62,7 @@ _UNITS = (
         "trypsin: absorbance at 253 nm of benzoyl-arginine ethyl ester rising by 0.001 a minute,"
         " 25 °C, pH 7.6, 3.2 mL, 1 cm; the pharmacopoeia's unit (USP_U) is a rise by 0.003",
         "Schwert and Takenaka, Biochim. Biophys. Acta 16, 570, 1955 (from memory); United States"
-        " Pharmacopeia 29, Crystallized Trypsin",
+        " Pharmacopeia 29, Crystallized Trypsin (its 0.003 from memory)",
         also="USP_U",
     ),
     AssayUnit(

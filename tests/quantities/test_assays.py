@@ -17,7 +17,9 @@ def activity(written):
     return quantity.value, quantity.activity
 
 
-@pytest.mark.source("P", "International Union of Biochemistry, 1964: 1 U = 16.67 nkat")
+@pytest.mark.source(
+    "P", "International Union of Biochemistry, 1964: 1 U = 16.67 nkat (from memory)"
+)
 def test_the_enzyme_unit_in_katals():
     """1 U is 16.67 nkat: one µmol a minute, to the four digits that are usually given."""
     per_nanokatal = parse_quantity("1 nkat", "charge").value
@@ -25,7 +27,9 @@ def test_the_enzyme_unit_in_katals():
     assert 1 / per_nanokatal == pytest.approx(16.67, abs=0.005)
 
 
-@pytest.mark.source("P", "United States Pharmacopeia 29, Crystallized Trypsin (0.003 a minute)")
+@pytest.mark.source(
+    "P", "United States Pharmacopeia 29, Crystallized Trypsin (its 0.003 a minute from memory)"
+)
 def test_the_trypsin_unit_of_the_pharmacopoeia_is_three_of_baee():
     """The least that crystallised trypsin must have, 2500 units a mg, is 7500 BAEE units a mg."""
     assert activity("2500 USP_U/mg") == activity("7500 BAEE_U/mg") == (7.5e6, "BAEE_U")

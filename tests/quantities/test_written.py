@@ -96,7 +96,7 @@ def test_plain_values(written, kind, expected):
     assert quantity == Quantity(expected, activity=quantity.activity, text=str(written))
 
 
-@pytest.mark.source("P", f"{SYSTEME_INTERNATIONAL}, tables 8 and section 2.3.1")
+@pytest.mark.source("P", f"{SYSTEME_INTERNATIONAL}, table 8 and section 2.3.1 (from memory)")
 @pytest.mark.parametrize(
     ("written", "same", "kind"),
     [
@@ -113,7 +113,9 @@ def test_units_beside_the_international_system(written, same, kind):
     assert value(written, kind) == value(same, kind)
 
 
-@pytest.mark.source("P", "NIST Special Publication 811, 2008, appendix B.8: calorie (th)")
+@pytest.mark.source(
+    "P", "NIST Special Publication 811, 2008, appendix B.8, calorie (th), from memory"
+)
 def test_the_calorie_is_the_thermochemical_one():
     """One kcal/mol is 4.184 kJ/mol."""
     assert value("1 kcal/mol", "energy") == 4184.0
