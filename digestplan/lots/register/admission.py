@@ -39,7 +39,7 @@ class Admission:
         if isinstance(event, Corrected):
             why = self._against_correction(event)
         elif not isinstance(event, Received) and event.lot not in self._present:
-            why = unknown_lot(event.lot, self._names)
+            why = unknown_lot(event.lot, {*self._names, *self._present})
         why = why or self._against_second_receipt(entry)
         if why is None:
             self._keep(entry)

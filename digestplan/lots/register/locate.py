@@ -162,7 +162,7 @@ _SQLITE = {
 }
 
 _SQLSTATES = {
-    "08": "the database's server cannot be reached",
+    "08": "the database cannot be reached",
     "25006": "the database can only be read; nothing was written",
     "28": "the database refuses this user or password",
     "3D": "the server has no database of this name",
@@ -203,7 +203,8 @@ def _told(error: Any) -> str:
         if state.startswith(start):
             return words
     if type(error).__name__ == "OperationalError" and not state and code is None:
-        return f"the database's server cannot be reached ({_first_line(error)})"
+        why = _first_line(error).rpartition("FATAL:")[2].strip()
+        return f"the database cannot be reached ({why})"
     return f"the database refuses ({_first_line(error)})"
 
 

@@ -36,7 +36,7 @@ def _first(connection: Connection) -> None:
 MIGRATIONS: tuple[Migration, ...] = (Migration(1, "the ledger of events", _first),)
 
 
-def version_found(connection: Connection, name: str, newest: int = MIGRATIONS[-1].number) -> int:
+def version_found(connection: Connection, name: str, newest: int) -> int:
     """
     Return the version of the register that a connection leads to.
 
@@ -80,9 +80,7 @@ def version_found(connection: Connection, name: str, newest: int = MIGRATIONS[-1
     return version
 
 
-def migrate(
-    connection: Connection, name: str, migrations: Sequence[Migration] = MIGRATIONS
-) -> list[int]:
+def migrate(connection: Connection, name: str, migrations: Sequence[Migration]) -> list[int]:
     """
     Bring a register to the newest version, inside the caller's transaction.
 
@@ -130,11 +128,12 @@ def bring_up_to_date(engine: Engine, name: str, *, create: bool) -> None:
     create
         Whether to start a register where there is none.
     """
+    migrations = MIGRATIONS
     with engine.connect() as connection:
-        version = version_found(connection, name)
+        version = version_found(connection, name, migrations[-1].number)
     if version == 0 and not create:
         raise refusal(name, "there is no lot register here")
-    if version < MIGRATIONS[-1].number:
-        append_to(engine, lambda connection: migrate(connection, name))
+    if version < migrations[-1].number:
+        append_to(engine, lambda connection: migrate(connection, name, migrations))
     if engine.dialect.name == "sqlite":
         leave_write_ahead_log(engine)
