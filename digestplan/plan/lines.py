@@ -7,10 +7,13 @@ the TOML reader has already accepted; if it were ever wrong, only a hint would b
 import re
 from collections.abc import Iterator, Mapping
 from contextlib import suppress
+from itertools import islice
 
 from digestplan.plan.wording import place_of
 
 Path = tuple[str | int, ...]
+
+_MOST_TOKENS = 50_000  # far more than a plan has; what stands behind them gets no line
 
 _TOKEN = re.compile(
     r"""(?P<blank>[ \t\r]+ | \#[^\n]*)
@@ -49,7 +52,7 @@ class _Scanner:
     @staticmethod
     def _split(text: str) -> Iterator[tuple[str, str, int]]:
         line = 1
-        for match in _TOKEN.finditer(text):
+        for match in islice(_TOKEN.finditer(text), _MOST_TOKENS):
             if match.lastgroup != "blank":
                 yield str(match.lastgroup), match.group(), line
             line += match.group().count("\n")

@@ -230,7 +230,8 @@ class Plan:
     """One sample's written treatment.
 
     ``start`` is None where the plan gives no clock; ``activity_unit`` is the unit in which
-    enzyme is counted throughout (``CDU``, ``U`` … or ``mg`` of enzyme).
+    enzyme is counted throughout (``CDU``, ``U`` … or ``mg`` of enzyme). ``remarks`` says what the
+    reader settled by itself and somebody should know.
     """
 
     title: str
@@ -244,3 +245,4 @@ class Plan:
     activity_unit: str
     notes: str = ""
     path: str | None = None
+    remarks: tuple[str, ...] = ()

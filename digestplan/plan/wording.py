@@ -6,6 +6,8 @@ from collections.abc import Iterable, Mapping
 from datetime import date, datetime, time
 from typing import Any
 
+from digestplan.quantities import wording
+
 _LONGEST = 60  # characters of the user's text that a message repeats
 _BARE = re.compile(r"[A-Za-z0-9_-]{1,40}")
 
@@ -25,17 +27,9 @@ def shown(written: Any) -> str:
         In quotation marks where it was text; on one line, short, without any character that a
         terminal would act upon.
     """
-    if isinstance(written, str):
-        return f'"{plain(written)}"'
-    if isinstance(written, bool):
-        return "true" if written else "false"
-    if isinstance(written, int):
-        return str(written) if abs(written) < 10**30 else "a huge number"
-    if isinstance(written, float):
-        return repr(written)
     if isinstance(written, datetime | date | time):
         return written.isoformat()
-    return "a table" if isinstance(written, Mapping) else "a list"
+    return "a table" if isinstance(written, Mapping) else wording.shown(written)
 
 
 def plain(text: str, longest: int = _LONGEST) -> str:

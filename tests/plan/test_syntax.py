@@ -77,9 +77,9 @@ def test_text_that_ends_too_soon(text):
 )
 def test_hostile_text_is_answered_within_a_second(text, phrase):
     """Texts made to keep a reader busy are refused at once."""
-    before = time.perf_counter()
+    before = time.process_time()
     problem = loaded(text)
-    assert time.perf_counter() - before < 1
+    assert time.process_time() - before < 1
     assert isinstance(problem, Problem)
     assert phrase in problem.message
     assert len(problem.message) < 300

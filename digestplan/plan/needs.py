@@ -1,0 +1,120 @@
+"""What a plan needs beyond what each section asks for alone, and why."""
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+from digestplan.plan.model import (
+    Demineralise,
+    Digest,
+    Enzyme,
+    Lot,
+    Rinse,
+    Sample,
+    Step,
+)
+from digestplan.plan.section import Section
+from digestplan.plan.units import MASS
+
+Steps = Sequence[Step | None]
+
+
+@dataclass(frozen=True, slots=True)
+class Parts:
+    """The checked parts of a plan, and the section that problems of the sample go to."""
+
+    written: Section
+    sample: Sample
+    lot: Lot
+    enzyme: Enzyme
+    steps: Steps
+    activity_unit: str
+    remarks: tuple[str, ...]
+
+
+def check_needs(parts: Parts, lot: Section) -> None:
+    """Note what is missing for what the plan asks for."""
+    _check_amounts(parts)
+    _check_thickness(parts)
+    _check_mineral(parts)
+    _check_autolysis(parts, lot)
+    _check_inhibitor(parts)
+
+
+def _check_amounts(parts: Parts) -> None:
+    """Note that the mass of the piece or of its substrate is missing where it counts."""
+    by_substrate, by_piece = _charge_by_mass(parts.steps), _bath(parts.steps)
+    if parts.enzyme.inactivation == "autolysis":
+        by_substrate = by_substrate or "for autolysis"
+    reason = by_substrate or by_piece
+    if parts.sample.wet_mass.origin == "default" and reason:
+        parts.written.missing("wet_mass", reason)
+    if parts.sample.substrate_fraction.origin == "default" and by_substrate:
+        _missing_of_material(parts.written, "substrate_fraction", by_substrate)
+
+
+def _charge_by_mass(steps: Steps) -> str | None:
+    for step in steps:
+        if isinstance(step, Digest):
+            charges = [addition.charge for addition in step.additions]
+            if step.charge_as != "ratio":
+                charges.insert(0, step.charge)
+            if charges:
+                return f"for {charges[0].place}"
+    return None
+
+
+def _bath(steps: Steps) -> str | None:
+    for index, step in enumerate(steps):
+        if isinstance(step, Demineralise | Rinse):
+            return f"for steps[{index}] ({step.do})"
+    return None
+
+
+def _missing_of_material(sample: Section, key: str, because: str) -> None:
+    """Note a missing key, unless the library might have brought it for the right material."""
+    place = sample.at("material")
+    if not any(problem.place == place for problem in sample.problems.found):
+        sample.missing(key, because)
+
+
+def _check_thickness(parts: Parts) -> None:
+    if "thickness" in parts.written:
+        return
+    reason = _bath(parts.steps)
+    if "diffusivity" in parts.enzyme.values:
+        reason = reason or "for enzyme.diffusivity"
+    if reason:
+        parts.written.missing("thickness", reason)
+
+
+def _check_mineral(parts: Parts) -> None:
+    if not any(isinstance(step, Demineralise) for step in parts.steps):
+        return
+    for key in ("mineral_fraction", "density"):
+        if getattr(parts.sample, key) is None:
+            _missing_of_material(parts.written, key, "for demineralising")
+    mineral = parts.sample.mineral_fraction
+    if mineral is not None and mineral.quantity.value == 0:
+        parts.written.add("mineral_fraction", "there is no mineral to dissolve")
+
+
+def _check_autolysis(parts: Parts, lot: Section) -> None:
+    if parts.enzyme.inactivation != "autolysis":
+        return
+    for index, step in enumerate(parts.steps):
+        if isinstance(step, Digest) and step.volume is None:
+            message = 'this is missing for autolysis; write for instance volume = "3 mL"'
+            lot.problems.add(f"steps[{index}].volume", message)
+    place = lot.at("label_activity")
+    told = "label_activity" in lot or any(p.place == place for p in lot.problems.found)
+    if parts.activity_unit != MASS and not told:
+        lot.missing("label_activity", "for autolysis")
+
+
+def _check_inhibitor(parts: Parts) -> None:
+    if "inhibition_constant" in parts.enzyme.values:
+        return
+    for index, step in enumerate(parts.steps):
+        if isinstance(step, Digest) and "inhibitor" in step.environment.solutes:
+            message = "this says nothing without enzyme.inhibition_constant"
+            parts.written.problems.add(f"steps[{index}].inhibitor", message)
