@@ -6,7 +6,7 @@ import numpy as np
 
 from digestplan.forecast.amounts import active_ratio
 from digestplan.forecast.conditions import inactivation_rate
-from digestplan.forecast.environment import calcium_factor, liquid_of, ph_factor
+from digestplan.forecast.environment import calcium_factor, ph_factor
 from digestplan.forecast.result import Caution, DigestForecast, StepForecast
 from digestplan.forecast.steps.base import Job
 from digestplan.forecast.window import VisitChance, Window, quantile
@@ -115,7 +115,7 @@ def _of_liquid(job: Job, step: Digest, result: DigestForecast) -> Iterator[Cauti
     enzyme = job.enzyme.enzyme
     working = max(stretch.temperature.quantity.value for stretch in step.programme)
     at = np.full((1, job.draws.n_draws), working)
-    liquid = liquid_of(step.environment, job.draws)
+    liquid = result.liquid
     if result.ph_at_temperature is not None:
         ph = result.ph_at_temperature
         share = float(np.median(ph_factor(job.enzyme, liquid, at)))
@@ -129,7 +129,7 @@ def _of_liquid(job: Job, step: Digest, result: DigestForecast) -> Iterator[Cauti
         if enzyme.cofactor_needed:
             yield told("calcium-missing", result.index, enzyme=enzyme.name)
     elif result.free_calcium is not None:
-        share = float(np.median(calcium_factor(job.enzyme, liquid, at)))
+        share = float(np.median(calcium_factor(job.enzyme, liquid)))
         if share < 0.7:
             yield told(
                 "calcium-low",

@@ -12,6 +12,7 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
+from digestplan.forecast.library_values import treatment_values
 from digestplan.plan.model import Plan, Stretch, Value
 from digestplan.quantities.model import Quantity
 
@@ -138,6 +139,7 @@ class Draws:
 
     def __init__(self, plan: Plan, n_draws: int, seed: int) -> None:
         self.inputs: dict[str, Quantity] = dict(uncertain_values(plan))
+        self.inputs |= dict(uncertain_values(treatment_values(plan)))
         self.seed = seed
         self.n_draws = n_draws if self.inputs else 1
         self._deviates = self._normal_deviates()

@@ -68,7 +68,17 @@ def susceptibility_of(
     run = sample.known_run
     extent = np.clip(draws.of(run.extent), _SURE, 1 - _SURE)
     after = _end_of(run, plan, draws, enzyme, geometry, concentration_per_ratio)
-    return susceptibility_for(extent, after, law, parameters, geometry)
+    s = susceptibility_for(extent, after, law, parameters, geometry)
+    return s * _thickness_ratio(run, plan, draws)
+
+
+def _thickness_ratio(run: KnownRun, plan: Plan, draws: Draws) -> Array | float:
+    """What is eaten from its surface at a steady pace takes as long as it is thick."""
+    sample = plan.sample
+    if sample.law != "erosion" or run.thickness is None or sample.thickness is None:
+        return 1.0
+    ratio: Array = draws.of(run.thickness) / draws.of(sample.thickness)
+    return ratio
 
 
 def susceptibility_for(

@@ -8,6 +8,7 @@ from typing import Literal
 import numpy as np
 from numpy.typing import NDArray
 
+from digestplan.forecast.environment import Liquid
 from digestplan.forecast.window import Spread, VisitChance, Window
 from digestplan.plan.model import Plan
 
@@ -65,7 +66,7 @@ class DigestForecast(StepForecast):
 
     ``dose_unit`` is the unit of ``dose_at_end``; ``ready_h`` and ``too_far_h`` are the draws of
     hours to target and to the keep-loss limit from the step's start, shape (n_draws,), infinite
-    for never. ``harm_by_heat`` is the median keep loss by heat alone; ``enzyme_factor`` how many
+    for never. ``liquid`` is what the enzyme works in; ``harm_by_heat`` is the median keep loss by heat alone; ``enzyme_factor`` how many
     times the enzyme each draw would have needed to reach the target, given for ever.
     """
 
@@ -85,8 +86,66 @@ class DigestForecast(StepForecast):
     free_calcium: float | None  # [mol/L]
     ready_h: Array
     too_far_h: Array
+    liquid: Liquid
     harm_by_heat: float
     enzyme_factor: Array
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class DemineraliseForecast(StepForecast):
+    """A demineralisation.
+
+    Attributes
+    ----------
+    extent_at_end
+        Fraction of the mineral that is gone.
+    hours_to_target, never_reaches_target
+        To the end-point `END_POINT`, from the step's start.
+    bath_spent
+        Median share of each bath's usable reagent that is used up at its end.
+    change_times
+        When the bath is changed, from the step's start. [h]
+    reagent_needed, reagent_held
+        What the mineral needs, and what all baths hold that can be used: medians. [mol]
+    carbon_dioxide
+        Gas given off, at the bath's temperature: median. [mL]
+    keep_loss_at_end
+        Fraction lost of what must be kept, by acid and heat so far.
+    curve_hours, curve_extent
+        Times, shape (n_times,), and 5th, 50th and 95th percentile, shape (3, n_times).
+    """
+
+    extent_at_end: Spread
+    hours_to_target: Spread
+    never_reaches_target: float
+    bath_spent: tuple[float, ...]
+    change_times: tuple[float, ...]
+    reagent_needed: float
+    reagent_held: float
+    carbon_dioxide: float
+    keep_loss_at_end: Spread
+    curve_hours: Array
+    curve_extent: Array
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class RinseForecast(StepForecast):
+    """A rinse.
+
+    Attributes
+    ----------
+    carry_over
+        What is left in the piece at the end, by substance: medians. [mol/L]
+    left_share
+        The same as a share of what was there before the rinse.
+    more_exchanges
+        How many more exchanges would bring each substance under what the next digest bears, where
+        that is not met: None where no number of them would.
+    """
+
+    carry_over: Mapping[str, float]
+    left_share: Mapping[str, float]
+    more_exchanges: Mapping[str, int | None]
 
 
 @dataclass(frozen=True, slots=True, eq=False)

@@ -228,7 +228,8 @@ class Course:
         """How many of the slowest modes still matter at the start of a cell."""
         if cell not in self._live:
             start = self.starts[cell]
-            assert start.modal_fresh is not None and start.modal_intermediate is not None
+            assert start.modal_fresh is not None
+            assert start.modal_intermediate is not None
             size = np.maximum(np.abs(start.modal_fresh), np.abs(start.modal_intermediate))
             alive = np.flatnonzero((size > _GONE * np.maximum(start.charged, _LEAST)).any(axis=1))
             self._live[cell] = int(alive[-1]) + 1 if len(alive) else 1

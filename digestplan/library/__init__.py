@@ -10,6 +10,7 @@ from digestplan.library.load import (
     LibraryValue,
     MaterialEntry,
     ReagentEntry,
+    SoluteEntry,
     Storage,
     UnknownKey,
     buffer,
@@ -19,6 +20,7 @@ from digestplan.library.load import (
     material,
     near,
     reagent,
+    solute,
 )
 
 __all__ = [
@@ -31,6 +33,7 @@ __all__ = [
     "LibraryValue",
     "MaterialEntry",
     "ReagentEntry",
+    "SoluteEntry",
     "Storage",
     "UnknownKey",
     "buffer",
@@ -40,4 +43,5 @@ __all__ = [
     "material",
     "near",
     "reagent",
+    "solute",
 ]

@@ -15,6 +15,7 @@ SECTIONS = {
     "material": "materials.toml",
     "buffer": "buffers.toml",
     "reagent": "reagents.toml",
+    "solute": "solutes.toml",
 }
 SOURCE_KINDS = ("published", "common practice", "from memory")
 QUANTITY_KINDS = {
@@ -47,6 +48,9 @@ QUANTITY_KINDS = {
     "film_velocity": "velocity",
     "surface_velocity": "velocity",
     "energy": "energy",
+    "tissue_share": "positive_number",
+    "acid_loss": "rate",
+    "acid_energy": "energy",
     "rate": "rate",
     "temperature": "temperature",
     "thaw": "fraction",
@@ -196,6 +200,15 @@ class ReagentEntry:
 
 
 @dataclass(frozen=True, slots=True)
+class SoluteEntry:
+    """What a liquid leaves in a piece."""
+
+    key: str
+    name: str
+    values: Mapping[str, LibraryValue]
+
+
+@dataclass(frozen=True, slots=True)
 class KnownRunEntry:
     """A protocol of common practice: it sets the susceptibility where the lab has none."""
 
@@ -296,6 +309,13 @@ def reagent(key: str) -> ReagentEntry:
     return ReagentEntry(
         key, raw["name"], raw["formula"], **flags, binds_calcium=binds, values=_values(raw)
     )
+
+
+@cache
+def solute(key: str) -> SoluteEntry:
+    """Return a solute; raise `UnknownKey` where there is none of that key."""
+    raw = _found("solute", key)
+    return SoluteEntry(key, raw["name"], _values(raw))
 
 
 @cache

@@ -4,12 +4,15 @@ from collections.abc import Callable
 from typing import Any
 
 from digestplan.forecast.result import StepForecast
-from digestplan.forecast.steps import digest
+from digestplan.forecast.steps import demineralise, digest, rinse, stop
 from digestplan.forecast.steps.base import Carried, Job
 from digestplan.plan.model import Step
 
 _RUNNERS: dict[str, Callable[..., tuple[Any, Carried]]] = {
+    "demineralise": demineralise.run,
+    "rinse": rinse.run,
     "digest": digest.run,
+    "stop": stop.run,
     "hold": digest.run,
 }
 

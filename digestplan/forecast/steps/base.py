@@ -1,6 +1,7 @@
 """What a step gets and what it hands on. One kind of step is one file beside this one."""
 
-from dataclasses import dataclass
+from collections.abc import Mapping
+from dataclasses import dataclass, field
 
 import numpy as np
 from numpy.typing import NDArray
@@ -45,6 +46,10 @@ class Carried:
         What the sample lies in.
     volume
         Volume of that liquid, shape (n_draws,); None where the plan does not say. [mL]
+    residues
+        What is dissolved in the piece, by reagent or solute, each of shape (n_draws,). [mol/L]
+    demineralised
+        Fraction of the mineral that is gone, shape (n_draws,); None where no step dissolved any.
     """
 
     clock: float
@@ -52,3 +57,5 @@ class Carried:
     state: State
     liquid: Liquid
     volume: Array | None
+    residues: Mapping[str, Array] = field(default_factory=dict)
+    demineralised: Array | None = None

@@ -14,11 +14,12 @@ from digestplan.forecast.amounts import (
 )
 from digestplan.forecast.conditions import rates_at
 from digestplan.forecast.draws import Draws
-from digestplan.forecast.environment import Liquid, free_calcium, liquid_of, ph_at
+from digestplan.forecast.environment import CarriedOver, Liquid, free_calcium, liquid_of, ph_at
 from digestplan.forecast.known_run import susceptibility_for
 from digestplan.forecast.result import Curve, DigestForecast
 from digestplan.forecast.steps.base import Carried, Job
 from digestplan.forecast.timeline import Timeline
+from digestplan.forecast.tissue import tissue_volume
 from digestplan.forecast.window import bands, on_clock, spread, window
 from digestplan.kinetics.damage import keep_loss
 from digestplan.kinetics.dose import Course
@@ -31,6 +32,7 @@ Array = NDArray[np.float64]
 _LAG_OF_ONE_ML = 2.5 / 60  # [h] common practice: a tube of 1 mL follows its bath in minutes
 _MOST_DEATH = 3.0  # e-folds of inactivation that one moving cell may hold
 _MOST_PIECES = 16
+_USUAL_VOLUMES = 10.0  # of liquid to one of tissue, where the plan does not say
 
 
 def run(
@@ -64,7 +66,16 @@ def run(
     forecast = _told(step, index, job, carried.clock, timeline, liquid, set_points)
     temperature = course.cells.end_weights @ set_points
     clock = carried.clock + course.cells.end
-    return forecast, Carried(clock, temperature, course.at_end(), liquid, volume)
+    after = replace(
+        carried,
+        clock=clock,
+        temperature=temperature,
+        state=course.at_end(),
+        liquid=liquid,
+        volume=volume,
+        residues=_diluted(job, carried, volume) if isinstance(step, Digest) else carried.residues,
+    )
+    return forecast, after
 
 
 def course_of_step(step: Digest | Hold, job: Job, carried: Carried) -> Course:
@@ -90,7 +101,15 @@ def _bath(step: Digest | Hold, job: Job, carried: Carried) -> tuple[Liquid, Arra
     if isinstance(step, Hold):
         return carried.liquid, carried.volume
     volume = None if step.volume is None else job.draws.of(step.volume)
-    return liquid_of(step.environment, job.draws, carried.liquid), volume
+    brought = CarriedOver(_diluted(job, carried, volume), _working_temperature(step))
+    return liquid_of(step.environment, job.draws, brought), volume
+
+
+def _diluted(job: Job, carried: Carried, volume: Array | None) -> dict[str, Array]:
+    """What the piece brings along, spread over itself and its new liquid. [mol/L]"""
+    tissue = tissue_volume(job.plan, job.draws)
+    liquid = _USUAL_VOLUMES * tissue if volume is None else volume
+    return {name: amount * tissue / (tissue + liquid) for name, amount in carried.residues.items()}
 
 
 def _charges(step: Digest | Hold, job: Job, carried: Carried) -> tuple[dict[float, Array], State]:
@@ -189,7 +208,6 @@ def _told(
     ready, too_far = _times(job, timeline)
     end, forever = timeline.states[-1], timeline.for_ever()
     residual = _residual(course, end)
-    last = np.median(set_points[-1:], axis=0)[None, :]
     return DigestForecast(
         do=step.do,
         index=index,
@@ -210,9 +228,10 @@ def _told(
         window=window(ready, too_far, plan.confidence, begin),
         curve=_curve(timeline, set_points),
         ph_at_temperature=ph_at(liquid, _working_temperature(step)),
-        free_calcium=free_calcium(liquid, last),
+        free_calcium=free_calcium(liquid),
         ready_h=ready,
         too_far_h=too_far,
+        liquid=liquid,
         harm_by_heat=float(np.median(keep_loss(end.heat))),
         enzyme_factor=_enzyme_factor(job, forever),
     )
