@@ -7,7 +7,8 @@ from typing import Any
 from digestplan.plan.wording import plain
 from digestplan.problems import Problem
 
-_MOST_PARTS = 8  # parts of a dotted name; plans need three
+_MOST_PARTS = 5  # parts of a dotted name; plans need three
+_MOST_OF = {",": 50_000, "[": 10_000}  # a TOML reader is slow with more, and no plan has them
 _WHERE = re.compile(r" \(at (?:line (\d+), column \d+|end of document)\)\Z")
 _KEY = r"""(?:[\w-]+|"[^"\n]*"|'[^'\n]*')"""
 _PARTS = re.compile(
@@ -65,6 +66,8 @@ _HINTS = (
 
 def loaded(text: str) -> dict[str, Any] | Problem:
     """Return the tables of a TOML text, or what is wrong with it."""
+    if any(text.count(mark) > most for mark, most in _MOST_OF.items()):
+        return Problem("", "there are more commas or brackets than any plan needs")
     for match in _PARTS.finditer(text):
         if match.group("long"):
             line = text.count("\n", 0, match.start()) + 1

@@ -103,6 +103,7 @@ def edited_text(original_text: str, edits: Edits, name: str) -> str:
                 _put(tables, path, value)
         text = _like(body, tomlkit.dumps(document))
         read_back = tomllib.loads(text)
+        text.encode("utf-8")  # half a character cannot be saved
     except (TOMLKitError, RecursionError, LookupError, TypeError, ValueError) as error:
         message = f"these edits cannot be written into the plan: {plain(str(error), 200)}"
         raise InputError(Problem("", message, name)) from None
@@ -116,6 +117,7 @@ def _both(path: Route, written: Written, meant: Any) -> tuple[Any, Any]:
     """Return an edit as a value for tomlkit, which keeps its spelling, and as a plain value."""
     if not isinstance(written, str):
         return written, written
+    written = re.sub(r"\r*\n", "\n", written)
     spelled = _spelled(path, written.strip(), meant)
     if spelled is not None:
         value = tomllib.loads(f"value = {spelled}")["value"]

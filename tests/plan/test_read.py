@@ -71,7 +71,10 @@ def test_same_plan_in_other_dress(tmp_path, content):
         (b"%PDF-1.7\n%\xe2\xe3\xcf\xd3", "not saved as UTF-8"),
         (b"digestplan = 1\ndigestplan = 1\n", "written twice"),
         (b"digestplan = 0,5\n", "decimal comma"),
-        (b"sample = " + b"[" * 900_000, "nested"),
+        (b"sample = " + b"[" * 9_000, "nested"),
+        (b"sample = " + b"[" * 900_000, "brackets"),
+        (b"x = [" + b"1," * 400_000 + b"]", "commas"),
+        (b"".join(b"[a%d.b.c.d]\n" % i for i in range(9_000)), "no such key"),
         (b"digestplan = " + b"9" * 5000, "more digits"),
         (b"digestplan = 0x" + b"f" * 5000, "newer format"),
         (b"digestplan = 1e999", "inf is no version"),
@@ -197,11 +200,11 @@ def test_many_mistakes_are_summed_up():
 @pytest.mark.parametrize(
     "text",
     [
-        PLAN + "[[steps]]\n" * 20_000,
+        PLAN + "[[steps]]\n" * 4_000,
         PLAN.replace("[\n", "[\n" + '{ at = "4 degC", for = "1 h" },\n' * 20_000, 1),
-        PLAN.replace('["2026', "[" + '"x", ' * 50_000 + '"2026', 1),
-        PLAN + "".join(f'[[steps]]\ndo = "d{i}"\n' for i in range(10_000)),
-        PLAN.replace('["12 h"', "[" + '"1 h", ' * 50_000 + '"12 h"', 1),
+        PLAN.replace('["2026', "[" + '"x", ' * 40_000 + '"2026', 1),
+        PLAN + "".join(f'[[steps]]\ndo = "d{i}"\n' for i in range(4_000)),
+        PLAN.replace('["12 h"', "[" + '"1 h", ' * 40_000 + '"12 h"', 1),
     ],
     ids=["steps", "stretches", "visits", "unknown steps", "changes"],
 )

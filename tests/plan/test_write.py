@@ -1,12 +1,15 @@
 """Saving a plan: the edits and nothing else."""
 
 import os
+import re
 import stat
 import tomllib
 from difflib import unified_diff
 from pathlib import Path
 
 import pytest
+from hypothesis import given, settings
+from hypothesis import strategies as st
 
 from digestplan.plan.read import read_plan_text
 from digestplan.plan.write import edited_text, save_plan
@@ -160,3 +163,26 @@ def test_new_file_is_made(tmp_path):
     path = tmp_path / "new.toml"
     save_plan(path, EXAMPLE, {"title": "x"})
     assert tomllib.loads(path.read_text(encoding="utf-8"))["title"] == "x"
+
+
+HARD = st.lists(st.sampled_from(['"""', "\n", "\r", "'", "\\", "#", "]", "= 1", "\x00", "\ud800"]))
+TEXTS = {
+    "title": lambda plan: plan["title"],
+    "notes": lambda plan: plan["notes"],
+    "lot.id": lambda plan: plan["lot"]["id"],
+    "visits[0]": lambda plan: plan["visits"][0],
+    "steps[0].volume": lambda plan: plan["steps"][0]["volume"],
+    "steps[0].temperature[1].to": lambda plan: plan["steps"][0]["temperature"][1]["to"],
+}
+
+
+@settings(deadline=None, derandomize=True, max_examples=200)
+@given(st.sampled_from(list(TEXTS)), st.text(max_size=20) | HARD.map("".join))
+def test_any_text_reads_back_letter_for_letter(place, written):
+    """Whatever text is saved reads back as it was, unless it cannot be saved at all."""
+    if "\ud800" in written:
+        with pytest.raises(InputError, match="cannot be written"):
+            edited_text(EXAMPLE, {place: written}, "plan.toml")
+    else:
+        after = tomllib.loads(edited_text(EXAMPLE, {place: written}, "plan.toml"))
+        assert TEXTS[place](after) == re.sub(r"\r*\n", "\n", written)
