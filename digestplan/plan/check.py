@@ -8,7 +8,7 @@ from digestplan.plan.clock import checked_start, checked_visits
 from digestplan.plan.enzyme import checked_enzyme
 from digestplan.plan.known import enzyme_entry, material_entry
 from digestplan.plan.lot import checked_lot
-from digestplan.plan.model import Demineralise, Digest, Plan, Sample
+from digestplan.plan.model import Demineralise, Digest, Plan, Rinse, Sample
 from digestplan.plan.needs import Parts, check_needs
 from digestplan.plan.order import check_amounts, check_order
 from digestplan.plan.pair import Pair
@@ -94,6 +94,7 @@ def _checked_parts(top: Section) -> Parts:
     )
     digested = any(step is None or isinstance(step, Digest) for step in steps)
     sample = checked_sample(sample_section, pair, digested=digested)
+    rinsed = any(isinstance(step, Rinse) for step in steps)
     units = Units(activity_unit_of(sample, lot, steps), lot, top.problems)
     parts = Parts(
         written=sample_section,
@@ -102,7 +103,7 @@ def _checked_parts(top: Section) -> Parts:
         enzyme=units.enzyme(enzyme),
         steps=tuple(None if step is None else units.step(step) for step in steps),
         activity_unit=units.unit,
-        remarks=tuple(_remarks(sample_section, sample, units, pair)),
+        remarks=tuple(_remarks(sample_section, sample, units, pair, rinsed=rinsed)),
     )
     check_order(steps, top.problems)
     check_amounts(sample, steps, top.problems)
@@ -110,7 +111,9 @@ def _checked_parts(top: Section) -> Parts:
     return parts
 
 
-def _remarks(written: Section, sample: Sample, units: Units, pair: Pair) -> Iterator[str]:
+def _remarks(
+    written: Section, sample: Sample, units: Units, pair: Pair, *, rinsed: bool
+) -> Iterator[str]:
     """Say what was settled by the reader and somebody should know."""
     if "susceptibility" in written and "known_run" in written:
         yield "The known run sets the susceptibility; the one that is written is set aside."
@@ -127,3 +130,5 @@ def _remarks(written: Section, sample: Sample, units: Units, pair: Pair) -> Iter
         yield f"The piece is taken to be as thick as in the known run ({thickness})."
     if pair.diffusivity is not None:
         yield "Without a thickness of the piece the enzyme is taken to reach all of it at once."
+    if rinsed:
+        yield "Without a thickness of the piece a rinse is taken to reach all of it at once."

@@ -55,6 +55,10 @@ class Field:
     exact: bool = False
 
 
-def part(name: str, note: str, example: str, **more: object) -> Field:
+def part(
+    name: str, note: str, example: str, *, required: bool = False, exact: bool = False
+) -> Field:
     """Return a field for a share that is neither nothing nor everything."""
-    return Field(name, "fraction", note, example, above=0.0, below=1.0, **more)  # type: ignore[arg-type]
+    return Field(
+        name, "fraction", note, example, required=required, above=0.0, below=1.0, exact=exact
+    )

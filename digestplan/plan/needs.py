@@ -14,6 +14,7 @@ from digestplan.plan.model import (
 )
 from digestplan.plan.section import Section
 from digestplan.plan.units import MASS
+from digestplan.plan.wording import listed, shown
 
 Steps = Sequence[Step | None]
 
@@ -42,7 +43,8 @@ def check_needs(parts: Parts, lot: Section) -> None:
 
 def _check_amounts(parts: Parts) -> None:
     """Note that the mass of the piece or of its substrate is missing where it counts."""
-    by_substrate, by_piece = _charge_by_mass(parts.steps), _bath(parts.steps)
+    by_substrate = _charge_by_mass(parts.steps)
+    by_piece = _first(parts.steps, Demineralise, Rinse)
     if parts.enzyme.inactivation == "autolysis":
         by_substrate = by_substrate or "for autolysis"
     reason = by_substrate or by_piece
@@ -63,9 +65,9 @@ def _charge_by_mass(steps: Steps) -> str | None:
     return None
 
 
-def _bath(steps: Steps) -> str | None:
+def _first(steps: Steps, *kinds: type[Step]) -> str | None:
     for index, step in enumerate(steps):
-        if isinstance(step, Demineralise | Rinse):
+        if isinstance(step, kinds):
             return f"for steps[{index}] ({step.do})"
     return None
 
@@ -80,7 +82,7 @@ def _missing_of_material(sample: Section, key: str, because: str) -> None:
 def _check_thickness(parts: Parts) -> None:
     if "thickness" in parts.written:
         return
-    reason = _bath(parts.steps)
+    reason = _first(parts.steps, Demineralise)
     if "diffusivity" in parts.enzyme.values:
         reason = reason or "for enzyme.diffusivity"
     if reason:
@@ -93,9 +95,19 @@ def _check_mineral(parts: Parts) -> None:
     for key in ("mineral_fraction", "density"):
         if getattr(parts.sample, key) is None:
             _missing_of_material(parts.written, key, "for demineralising")
+    _check_known_reagent(parts)
     mineral = parts.sample.mineral_fraction
     if mineral is not None and mineral.quantity.value == 0:
         parts.written.add("mineral_fraction", "there is no mineral to dissolve")
+
+
+def _check_known_reagent(parts: Parts) -> None:
+    known = parts.sample.known_demineralisation
+    reagents = [step.reagent for step in parts.steps if isinstance(step, Demineralise)]
+    if known and known["reagent"] and known["reagent"] not in reagents:
+        message = f"it says nothing of {listed(reagents, 'and')}, with which this plan works"
+        place = f"{parts.written.at('known_demineralisation')}.reagent"
+        parts.written.problems.add(place, f"{shown(known['reagent'])}: {message}")
 
 
 def _check_autolysis(parts: Parts, lot: Section) -> None:

@@ -121,7 +121,9 @@ _DEMINERALISE = (
         above=0.0,
         exact=True,
     ),
-    part("when_spent", "Or: change whenever this fraction of the bath is used up", "0.5"),
+    part(
+        "when_spent", "Or: change whenever this fraction of the bath is used up", "0.5", exact=True
+    ),
     _TEMPERATURE,
     _FOR,
     Field("closed_vessel", "flag", "Whether the vessel is closed", "false", default="false"),

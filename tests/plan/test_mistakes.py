@@ -371,3 +371,12 @@ def test_mistake_is_told_where_it_is(old, new, place, words, phrase):
     assert phrase in problem.message
     assert problem.line == (None if words is None else line_with(text, words))
     assert problem.file == "plan.toml"
+
+
+def test_message_in_full():
+    """A message names file, line, place, what was written, what is wanted and an example."""
+    text = PLAN.replace('volume = "3 mL"', 'volume = "3 mg"')
+    (problem,) = problems_of(text)
+    line = line_with(text, "3 mg")
+    said = '"3 mg" is a mass; a volume is wanted here, such as "3 mL"'
+    assert str(problem) == f"plan.toml:{line}: steps[2].volume: {said}"

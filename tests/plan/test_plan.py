@@ -426,3 +426,73 @@ def test_whole_plan_ends_within_ten_years():
     assert len(parse_plan(MINIMAL + hold, "x").steps) == 2
     with pytest.raises(InputError, match="more than ten years"):
         parse_plan(MINIMAL + hold + hold, "x")
+
+
+KNOWN = """
+[sample.known_demineralisation]
+reagent = "edta"
+concentration = "10 %"
+temperature = "20 degC"
+duration = "3 d"
+extent = 0.95
+thickness = "2 mm"
+"""
+
+
+def test_known_demineralisation_is_of_the_same_reagent():
+    """A demineralisation proven in the lab is read, and must be with what the plan works with."""
+    text = EXPLICIT.replace("[lot]", f"{KNOWN}[lot]")
+    with pytest.raises(
+        InputError, match=r"known_demineralisation\.reagent: .*says nothing of hydro"
+    ):
+        parse_plan(text, "x")
+    run = parse_plan(text.replace('"edta"', '"hydrochloric acid"'), "x").sample
+    assert run.known_demineralisation["reagent"] == "hydrochloric-acid"
+    assert written(run.known_demineralisation["duration"]) == (72, 0, "exact", None)
+    assert written(run.known_demineralisation["concentration"]) == (*approx(0.1, 0), "exact", "w/v")
+    assert "ph" not in run.known_demineralisation
+
+
+@pytest.mark.parametrize(
+    ("lines", "names"),
+    [
+        (
+            'melting_enthalpy = "590 kJ/mol"\nmelting_entropy = "1.46 kJ/(mol K)"',
+            ["melting_enthalpy", "melting_entropy"],
+        ),
+        (
+            'melting_rate = "1 1/h"\nmelting_energy = "5e5 J/mol"\nmelting_temperature = "60 C"',
+            ["melting_rate", "melting_energy", "melting_temperature"],
+        ),
+    ],
+)
+def test_damage_of_the_plan_replaces_that_of_the_library(lines, names):
+    """What the plan writes of heat damage stands in place of all that the library knows."""
+    damage = parse_plan(
+        MINIMAL.replace("[lot]", f"[sample.damage]\n{lines}\n[lot]"), "x"
+    ).sample.damage
+    assert list(damage) == names
+    assert {value.origin for value in damage.values()} == {"plan"}
+
+
+def test_half_a_damage_is_refused():
+    """Both ways of stating heat damage need all of their values, and do not mix."""
+    for lines, phrase in (
+        ('melting_rate = "1 1/h"', "melting_energy: this is missing beside the others"),
+        (
+            'melting_rate = "1 1/h"\nmelting_entropy = "1 J/(mol K)"',
+            "write either melting_enthalpy",
+        ),
+        ("", "melting_enthalpy: this is missing"),
+    ):
+        with pytest.raises(InputError) as caught:
+            parse_plan(MINIMAL.replace("[lot]", f"[sample.damage]\n{lines}\n[lot]"), "x")
+        assert phrase in str(caught.value)
+
+
+def test_rinse_without_thickness_is_told():
+    """A rinse of a piece of unknown thickness loads, and the plan says what is assumed."""
+    rinse = 'do = "rinse"\nvolume = "5 mL"\nexchanges = 3\neach = "20 min"\n'
+    plan = parse_plan(MINIMAL.replace("[[steps]]\n", f"[[steps]]\n{rinse}[[steps]]\n"), "x")
+    assert "a rinse is taken to reach all" in plan.remarks[-1]
+    assert (plan.steps[0].fluid, plan.steps[0].temperature.origin) == ("water", "default")
