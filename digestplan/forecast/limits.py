@@ -5,7 +5,7 @@ from collections.abc import Iterator, Sequence
 import numpy as np
 from numpy.typing import NDArray
 
-from digestplan.forecast.cautions import percent
+from digestplan.forecast.told import percent
 from digestplan.forecast.result import DigestForecast, StepForecast
 from digestplan.forecast.steps.base import Job
 
@@ -38,7 +38,8 @@ def limits_of(job: Job, steps: Sequence[StepForecast]) -> tuple[str, ...]:
 
 def _holds_up(job: Job, digests: Sequence[DigestForecast]) -> Iterator[str]:
     target = job.plan.sample.target_extent.quantity.value
-    step = next((d for d in digests if d.hours_to_target.p50 is not None), digests[-1])
+    working = [d for d in digests if d.do == "digest"] or digests
+    step = next((d for d in working if d.hours_to_target.p50 is not None), working[-1])
     ceiling, residual = step.ceiling.p50 or 0.0, step.residual_activity_at_end.p50 or 0.0
     mean, centre = step.extent_at_end.p50 or 0.0, step.extent_at_centre.p50 or 0.0
     if ceiling < target:

@@ -43,7 +43,7 @@ class Response:
         s = self.susceptibility[draws]
         if self.geometry is None or state.local is None:
             return self._law(s * state.dose, draws)
-        return self.geometry.mean(self._law(s * state.local, draws))
+        return self.geometry.mean(self._law(s * _not_negative(state.local), draws))
 
     def extent_at_centre(self, state: State, draws: Draws = ALL) -> Array:
         """Extent at the centre: what is eaten from its surface keeps a raw core to the end. [1]."""
@@ -51,14 +51,19 @@ class Response:
         if self.law.name == "erosion":
             return np.where(self._law(s * state.dose, draws) >= 1.0, 1.0, 0.0)
         dose = state.dose if self.geometry is None or state.local is None else state.local[0]
-        return self._law(s * dose, draws)
+        return self._law(s * _not_negative(dose), draws)
 
     def keep_loss(self, state: State, draws: Draws = ALL) -> Array:
         """Fraction lost of what must be kept, by the enzyme, heat and acid. [1]."""
         s = self.keep_susceptibility[draws]
         if self.geometry is None or state.local is None:
             return keep_loss(s * state.dose + state.heat)
-        return self.geometry.mean(keep_loss(s * state.local + state.heat))
+        return self.geometry.mean(keep_loss(s * _not_negative(state.local) + state.heat))
+
+
+def _not_negative(dose: Array) -> Array:
+    """A dose at depths that nothing has reached may be below zero by the last digits."""
+    return np.maximum(dose, 0.0)
 
 
 def scaled_dose_to(law: Law, extent: Array, parameters: tuple[Array, ...]) -> Array:

@@ -66,7 +66,8 @@ class DigestForecast(StepForecast):
 
     ``dose_unit`` is the unit of ``dose_at_end``; ``ready_h`` and ``too_far_h`` are the draws of
     hours to target and to the keep-loss limit from the step's start, shape (n_draws,), infinite
-    for never. ``liquid`` is what the enzyme works in; ``harm_by_heat`` is the median keep loss by heat alone; ``enzyme_factor`` how many
+    for never. ``liquid`` is what the enzyme works in, ``brought`` what the
+    piece brought along into it [mol/L]; ``harm_by_heat`` is the median keep loss by heat alone; ``enzyme_factor`` how many
     times the enzyme each draw would have needed to reach the target, given for ever.
     """
 
@@ -87,6 +88,7 @@ class DigestForecast(StepForecast):
     ready_h: Array
     too_far_h: Array
     liquid: Liquid
+    brought: Mapping[str, Array]
     harm_by_heat: float
     enzyme_factor: Array
 

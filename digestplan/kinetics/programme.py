@@ -17,8 +17,9 @@ Array = NDArray[np.float64]
 NODES = 8  # Gauss-Legendre nodes of a cell in which the temperature changes
 FOR_EVER = 1e6  # [h] what stands for "however long one waits"
 _WIDEST = 8.0  # [K] the most by which the temperature changes within one cell
-_GROWTH = 2.0  # by which graded cells grow
-_GRADES = 20  # how many of them
+_GROWTH = 2.5  # by which graded cells grow
+_GRADES = 12  # how many of them follow fresh enzyme
+_FEW_GRADES = 3  # and a change of temperature alone
 _SETTLED = 1e-6  # [K] a lag that is nearer than this to its bath has arrived
 
 
@@ -245,7 +246,8 @@ def compile_programme(
         bath = before if leg.ramp else target
         motion = _Motion(bath, slope, sample - bath + slope * lag, lag)
         inner = [b - clock for b in breaks if clock < b < clock + leg.hours]
-        for cell_end in _cell_ends(motion, leg, nominal, inner, pieces, graded):
+        fresh = number == 0 or leg is waiting or clock in breaks
+        for cell_end in _cell_ends(motion, leg, nominal, inner, pieces, graded, fresh):
             _add_cell(builder, motion, clock, cell_end, nominal, graded)
         sample = motion.at(leg.hours) if (leg.ramp or lag) else target
         clock += leg.hours
@@ -287,6 +289,7 @@ def _cell_ends(
     inner: Sequence[float],
     pieces: int,
     graded: bool,
+    fresh: bool,
 ) -> list[float]:
     """Times within the leg at which cells end: narrow where the temperature moves."""
     ends = {leg.hours, *inner}
@@ -301,8 +304,10 @@ def _cell_ends(
             steps = np.linspace(a, b, pieces + 1)[1:]
             ends.update(float(s) for s in steps if s < leg.hours)
     if graded:
-        for begin, end in zip([0.0, *inner], [*inner, leg.hours], strict=True):
-            ends.update(begin + (end - begin) * _GROWTH ** float(-n) for n in range(1, _GRADES))
+        starts, stops = [0.0, *inner], [*inner, leg.hours]
+        for begin, end in zip(starts, stops, strict=True):
+            grades = _GRADES if begin or fresh else _FEW_GRADES
+            ends.update(begin + (end - begin) * _GROWTH ** float(-n) for n in range(1, grades))
     return sorted(ends)
 
 

@@ -4,18 +4,27 @@ import tomllib
 from dataclasses import dataclass
 from functools import cache
 from importlib.resources import files
-from typing import Literal
+from typing import Any, Literal
 
 
 @dataclass(frozen=True, slots=True)
 class CautionEntry:
-    """One row of the table: what is shown, how serious it is, and where it comes from."""
+    """One row of the table: what is shown, how serious it is, and where it comes from.
+
+    ``first`` and ``then`` are tags of steps that must not meet (or, without ``then``, that bring
+    the caution alone); ``order`` is ``later`` (the second after the first), ``any`` or
+    ``together`` (in one step); a plain rinse between them may clear it.
+    """
 
     code: str
     level: Literal["stop", "care", "note"]
     kind: Literal["safety", "validity"]
     text: str
     source: str
+    first: tuple[str, ...] = ()
+    then: tuple[str, ...] = ()
+    order: Literal["later", "any", "together"] = "later"
+    cleared_by_rinse: bool = False
 
     def words(self, **filling: object) -> str:
         """Fill the text in; a caution about safety ends with the deferral."""
@@ -27,7 +36,11 @@ class CautionEntry:
 def _table() -> tuple[str, dict[str, CautionEntry]]:
     raw = tomllib.loads(files(__package__).joinpath("cautions.toml").read_text("utf-8"))
     sentence = raw.pop("deferral")
-    return sentence, {code: CautionEntry(code, **row) for code, row in raw.items()}
+    return sentence, {code: CautionEntry(code, **_frozen(row)) for code, row in raw.items()}
+
+
+def _frozen(row: dict[str, Any]) -> dict[str, Any]:
+    return {key: tuple(item) if isinstance(item, list) else item for key, item in row.items()}
 
 
 def deferral() -> str:

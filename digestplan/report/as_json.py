@@ -9,7 +9,13 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from digestplan.forecast.result import DigestForecast, Forecast, StepForecast
+from digestplan.forecast.result import (
+    DemineraliseForecast,
+    DigestForecast,
+    Forecast,
+    RinseForecast,
+    StepForecast,
+)
 from digestplan.forecast.window import Spread, VisitChance, Window
 
 FORMAT = 1  # version of the document
@@ -52,7 +58,40 @@ def step_document(step: StepForecast) -> dict[str, Any]:
     }
     if isinstance(step, DigestForecast):
         document |= _digest_document(step)
+    elif isinstance(step, DemineraliseForecast):
+        document |= _demineralise_document(step)
+    elif isinstance(step, RinseForecast):
+        document |= _rinse_document(step)
     return document
+
+
+def _demineralise_document(step: DemineraliseForecast) -> dict[str, Any]:
+    low, middle, high = step.curve_extent
+    return {
+        "extent_at_end": spread_document(step.extent_at_end),
+        "hours_to_target": spread_document(step.hours_to_target),
+        "never_reaches_target": number(step.never_reaches_target),
+        "bath_spent": [number(spent) for spent in step.bath_spent],
+        "bath_changes_h": [number(time) for time in step.change_times],
+        "acid_needed_mmol": number(1e3 * step.reagent_needed),
+        "acid_held_mmol": number(1e3 * step.reagent_held),
+        "carbon_dioxide_mL": number(step.carbon_dioxide),
+        "keep_loss_at_end": spread_document(step.keep_loss_at_end),
+        "curve": {
+            "hours": numbers(step.curve_hours),
+            "extent_p05": numbers(low),
+            "extent_p50": numbers(middle),
+            "extent_p95": numbers(high),
+        },
+    }
+
+
+def _rinse_document(step: RinseForecast) -> dict[str, Any]:
+    return {
+        "carry_over": {name: number(1e3 * amount) for name, amount in step.carry_over.items()},
+        "left_share": {name: number(share) for name, share in step.left_share.items()},
+        "more_exchanges": dict(step.more_exchanges),
+    }
 
 
 def _digest_document(step: DigestForecast) -> dict[str, Any]:

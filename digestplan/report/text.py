@@ -3,12 +3,19 @@
 import textwrap
 from collections.abc import Callable, Iterator
 
-from digestplan.forecast.result import DigestForecast, Forecast, StepForecast
+from digestplan.forecast.result import (
+    DemineraliseForecast,
+    DigestForecast,
+    Forecast,
+    RinseForecast,
+    StepForecast,
+)
 from digestplan.forecast.window import Spread
 from digestplan.report import words
 from digestplan.report.verdict import verdict
 
 WIDTH = 79
+_WORTH_A_ROW = 0.001
 
 
 def forecast_text(forecast: Forecast) -> str:
@@ -60,12 +67,44 @@ def _step(forecast: Forecast, step: StepForecast) -> str:
     for name, spread, say in rows:
         cells = (spread.p50,) if exact else (spread.p05, spread.p50, spread.p95)
         table.append(f"  {name:<30}" + "".join(f"{say(cell):>12}" for cell in cells))
+    table += [_wrapped(line, "    ", "  ") for line in _facts(step)]
     return "\n".join(table)
+
+
+def _facts(step: StepForecast) -> Iterator[str]:
+    """What a step tells beside its percentiles."""
+    if isinstance(step, DemineraliseForecast):
+        yield (
+            f"reagent needed {1e3 * step.reagent_needed:.2g} mmol, usable in the baths "
+            f"{1e3 * step.reagent_held:.2g} mmol; spent at the end of each bath: "
+            + ", ".join(words.percent(spent) for spent in step.bath_spent)
+        )
+        if step.change_times:
+            yield "change the bath after " + ", ".join(words.hours(t) for t in step.change_times)
+        if step.carbon_dioxide > 0:
+            yield f"carbon dioxide given off: about {step.carbon_dioxide:.2g} mL"
+    elif isinstance(step, RinseForecast):
+        for name, amount in step.carry_over.items():
+            share = words.percent(step.left_share[name])
+            yield f"{name.replace('-', ' ')} left in the piece: {1e3 * amount:.2g} mM ({share})"
+    elif isinstance(step, DigestForecast) and step.do == "digest":
+        if step.ph_at_temperature is not None:
+            calcium = (
+                ""
+                if step.free_calcium is None
+                else f", {1e3 * step.free_calcium:.2g} mM free calcium"
+            )
+            yield f"in the warm: pH {step.ph_at_temperature:.2f}{calcium}"
 
 
 def _rows(
     forecast: Forecast, step: StepForecast
 ) -> Iterator[tuple[str, Spread, Callable[[float | None], str]]]:
+    if isinstance(step, DemineraliseForecast):
+        yield "hours to end-point", step.hours_to_target, words.hours
+        yield "mineral gone at the end", step.extent_at_end, words.percent
+        if (step.keep_loss_at_end.p95 or 0) > _WORTH_A_ROW:
+            yield "keep loss so far", step.keep_loss_at_end, words.percent
     if not isinstance(step, DigestForecast):
         return
     yield "hours to target", step.hours_to_target, words.hours
@@ -74,7 +113,8 @@ def _rows(
     yield "extent at the end", step.extent_at_end, words.percent
     if step.extent_at_centre != step.extent_at_end:
         yield "extent at the centre", step.extent_at_centre, words.percent
-    yield "keep loss at the end", step.keep_loss_at_end, words.percent
+    if (step.keep_loss_at_end.p95 or 0) > _WORTH_A_ROW:
+        yield "keep loss at the end", step.keep_loss_at_end, words.percent
     yield "enzyme still active", step.residual_activity_at_end, words.percent
     yield "ceiling, however long", step.ceiling, words.percent
 

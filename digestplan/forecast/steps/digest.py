@@ -62,8 +62,9 @@ def run(
     liquid, volume = _bath(step, job, carried)
     course = course_of_step(step, job, carried)
     set_points = _set_points(step, job.draws, carried)
+    brought = _diluted(job, carried, volume) if isinstance(step, Digest) else {}
     timeline = Timeline(course, job.response, open_ended=open_ended)
-    forecast = _told(step, index, job, carried.clock, timeline, liquid, set_points)
+    forecast = _told(step, index, job, carried.clock, timeline, liquid, set_points, brought)
     temperature = course.cells.end_weights @ set_points
     clock = carried.clock + course.cells.end
     after = replace(
@@ -184,7 +185,11 @@ def _cells_and_rates(
 
 def _most_death_in_a_moving_cell(cells: Cells, rates: Rates) -> float:
     lengths = np.diff(cells.edges)
-    moving = [cell for cell in range(cells.n_cells) if len(cells.nodes[cell]) > 1]
+    moving = [
+        cell
+        for cell in range(cells.n_cells)
+        if len(cells.nodes[cell]) > 1 and cells.edges[cell] < cells.end
+    ]
     worst = 0.0
     for cell in moving:
         rate = rates.first[list(cells.nodes[cell])].max()
@@ -202,6 +207,7 @@ def _told(
     timeline: Timeline,
     liquid: Liquid,
     set_points: Array,
+    brought: dict[str, Array],
 ) -> DigestForecast:
     plan, course, response = job.plan, timeline.course, job.response
     begin = on_clock(plan.start, clock)
@@ -232,6 +238,7 @@ def _told(
         ready_h=ready,
         too_far_h=too_far,
         liquid=liquid,
+        brought=brought,
         harm_by_heat=float(np.median(keep_loss(end.heat))),
         enzyme_factor=_enzyme_factor(job, forever),
     )
