@@ -71,7 +71,7 @@ class Section:
             where = f"[{home}]" if home else "the top of the plan, above all tables"
             if home.startswith("steps."):
                 where = f"a {home.removeprefix('steps.')} step"
-            return f"this key belongs into {where}"
+            return f"this key belongs in {where}"
         near = nearest(key, self.fields)
         if near is not None:
             return f"there is no such key; is {near} meant?"

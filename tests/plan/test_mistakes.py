@@ -144,7 +144,7 @@ SHAPES = [
         "3 kJ",
         "[enzyme]",
     ),
-    ("[lot]\n", "[lot]\nwet_mass = 1\n", "lot.wet_mass", "wet_mass = 1", "belongs into [sample]"),
+    ("[lot]\n", "[lot]\nwet_mass = 1\n", "lot.wet_mass", "wet_mass = 1", "belongs in [sample]"),
     ("[lot]\n", "[lot]\nremaining = 2\n", "lot.remaining", "remaining", "between 0 and 1.5"),
     ("[lot]\n", "[lot]\nid = 7\n", "lot.id", "id = 7", "7 is no text"),
     ("[lot]\n", '[lot]\nid = "  "\n', "lot.id", "id = ", "this is empty"),
