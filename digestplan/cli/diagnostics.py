@@ -44,6 +44,7 @@ def run(command: Callable[[], int | None]) -> int:
 
 def complain(message: str) -> None:
     """Write one message to standard error, on one line."""
+    sys.stderr.write(" ".join(message.splitlines()) + "\n")
 
 
 def refuse(message: str) -> int:

@@ -15,6 +15,7 @@ from digestplan.report import words
 from digestplan.report.verdict import verdict
 
 WIDTH = 79
+Row = tuple[str, Spread, Callable[[float | None], str]]
 _WORTH_A_ROW = 0.001
 
 
@@ -97,9 +98,7 @@ def _facts(step: StepForecast) -> Iterator[str]:
             yield f"in the warm: pH {step.ph_at_temperature:.2f}{calcium}"
 
 
-def _rows(
-    forecast: Forecast, step: StepForecast
-) -> Iterator[tuple[str, Spread, Callable[[float | None], str]]]:
+def _rows(forecast: Forecast, step: StepForecast) -> Iterator[Row]:
     if isinstance(step, DemineraliseForecast):
         yield "hours to end-point", step.hours_to_target, words.hours
         yield "mineral gone at the end", step.extent_at_end, words.percent
@@ -107,16 +106,22 @@ def _rows(
             yield "keep loss so far", step.keep_loss_at_end, words.percent
     if not isinstance(step, DigestForecast):
         return
-    yield "hours to target", step.hours_to_target, words.hours
-    if forecast.plan.sample.keep_loss_limit is not None:
-        yield "hours to keep-loss limit", step.hours_to_keep_limit, words.hours
+    if step.do == "digest":
+        yield from _times(forecast, step)
     yield "extent at the end", step.extent_at_end, words.percent
-    if step.extent_at_centre != step.extent_at_end:
+    if step.extent_at_centre != step.extent_at_end and step.do == "digest":
         yield "extent at the centre", step.extent_at_centre, words.percent
     if (step.keep_loss_at_end.p95 or 0) > _WORTH_A_ROW:
         yield "keep loss at the end", step.keep_loss_at_end, words.percent
     yield "enzyme still active", step.residual_activity_at_end, words.percent
-    yield "ceiling, however long", step.ceiling, words.percent
+    if step.do == "digest":
+        yield "ceiling, however long", step.ceiling, words.percent
+
+
+def _times(forecast: Forecast, step: DigestForecast) -> Iterator[Row]:
+    yield "hours to target", step.hours_to_target, words.hours
+    if forecast.plan.sample.keep_loss_limit is not None:
+        yield "hours to keep-loss limit", step.hours_to_keep_limit, words.hours
 
 
 def _visits(forecast: Forecast) -> str:

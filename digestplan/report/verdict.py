@@ -3,6 +3,8 @@
 from digestplan.forecast.result import Forecast
 from digestplan.report import words
 
+_A_YEAR = 24 * 366.0  # [h]
+
 
 def verdict(forecast: Forecast) -> str:
     """
@@ -34,6 +36,8 @@ def _window_sentence(forecast: Forecast) -> str:
         if plan.sample.keep_loss_limit is None:
             return f"Ready ({target}) by {opens}{sure}; no keep-loss limit says when it is too far."
         return f"Ready ({target}) by {opens}{sure}, and it does not go too far after that."
+    if window.closes_h > _A_YEAR:
+        return f"Ready ({target}) by {opens}{sure}; too far only after more than a year."
     closes = _moment(forecast, window.closes_h)
     if not window.exists:
         return (
@@ -65,7 +69,7 @@ def _moment(forecast: Forecast, hours: float) -> str:
     moment = on_clock(forecast.plan.start, hours)
     if moment is None:
         return f"{words.hours(hours)} after the start"
-    if hours > 24 * 366:
+    if hours > _A_YEAR:
         return "more than a year from the start"
     return words.day_and_time(moment)
 
