@@ -109,11 +109,11 @@ def test_killed_while_the_register_is_being_made(tmp_path):
 def test_four_processes_at_once(location):
     """Four processes with 200 writes each, starting on an empty place: none refused, none lost."""
     processes = [write(location, f"w{i}") for i in range(N_PROCESSES)]
-    acknowledged = []
-    for process in processes:
-        out, err = process.communicate(timeout=120)
-        assert (process.returncode, err) == (0, "")
-        acknowledged += out.split()[1:]
+    told = [process.communicate(timeout=120) for process in processes]
+    assert [(p.returncode, err) for p, (_, err) in zip(processes, told, strict=True)] == [
+        (0, "")
+    ] * N_PROCESSES
+    acknowledged = [name for out, _ in told for name in out.split()[1:]]
     assert len(acknowledged) == N_PROCESSES * N_WRITES
     with open_register(location, create=False) as register:
         n_events = check_whole(register, acknowledged)

@@ -13,7 +13,7 @@ from digestplan.lots.register.locate import default_location, name_of, register_
 # -- where ----------------------------------------------------------------------------------
 
 
-@pytest.mark.source("P", "XDG Base Directory Specification 0.8, section 3 (XDG_DATA_HOME)")
+@pytest.mark.source("P", "XDG Base Directory Specification (freedesktop.org), sections 2 and 3")
 def test_the_users_own_register_is_where_the_platform_keeps_data(monkeypatch):
     """The data folder is taken from the environment where that names an absolute path."""
     monkeypatch.setattr(sys, "platform", "linux")

@@ -119,8 +119,12 @@ def _sqlite(url: URL, timeout: float) -> Engine:
     @event.listens_for(engine, "connect")
     def _settle(connection: Any, _record: Any) -> None:
         connection.isolation_level = None  # BEGIN is said below, and nowhere else
-        for pragma in ("synchronous = FULL", "recursive_triggers = ON"):
-            connection.execute(f"PRAGMA {pragma}")
+        try:
+            for pragma in ("synchronous = FULL", "recursive_triggers = ON"):
+                connection.execute(f"PRAGMA {pragma}")
+        except sqlite3.Error:  # a locked or damaged file; nobody else closes what failed here
+            connection.close()
+            raise
 
     @event.listens_for(engine, "begin")
     def _begin(connection: Connection) -> None:

@@ -7,11 +7,13 @@ from collections.abc import Generator, Iterator, Sequence
 from contextlib import closing, contextmanager
 from dataclasses import dataclass, replace
 from datetime import UTC, datetime
+from itertools import groupby
+from operator import itemgetter
 from pathlib import Path
 from types import TracebackType
 from typing import Any, Self
 
-from sqlalchemy import URL, ColumnElement, Connection, Engine, Row, insert, select
+from sqlalchemy import URL, Connection, Engine, Select, insert, select
 
 from digestplan.lots.register import chain, stock
 from digestplan.lots.register.admission import Admission, unknown_lot
@@ -33,11 +35,11 @@ from digestplan.lots.register.locate import (
     register_url,
 )
 from digestplan.lots.register.migrations import bring_up_to_date
-from digestplan.lots.register.stock import Entry, LotRecord, LotSummary
+from digestplan.lots.register.stock import SUMMED, Entry, LotRecord, LotSummary
 from digestplan.lots.register.tables import events as table
+from digestplan.lots.register.tables import rows_with
 from digestplan.problems import InputError, Problem
 
-_AT_ONCE = 500  # values in one IN (…)
 _READ = 1000  # rows fetched at a time
 _PATIENCE = 10.0  # [s]
 
@@ -180,7 +182,7 @@ class Register:
         self, connection: Connection, events: Sequence[Event]
     ) -> tuple[dict[str, Event], list[int], dict[int, str]]:
         """What will be there by id, which of the events are new, and which are at odds."""
-        rows = _rows_with(connection, table.c.id, [e.id for e in events])
+        rows = rows_with(connection, table.c.id, [e.id for e in events])
         with self._readable():
             kept = {row.id: chain.event_of(row) for row in rows}
         new, problems = [], {}
@@ -199,8 +201,8 @@ class Register:
         lots = sorted({e.lot for e in events})
         deciding = table.c.kind.in_(("received", "corrected"))
         targets = [e.corrects for e in events if isinstance(e, Corrected)]
-        rows = [*_rows_with(connection, table.c.lot, lots, deciding)]
-        rows += _rows_with(connection, table.c.id, targets, ~deciding)
+        rows = [*rows_with(connection, table.c.lot, lots, deciding)]
+        rows += rows_with(connection, table.c.id, targets, ~deciding)
         entries = [chain.entry_of(row) for row in sorted(rows, key=lambda row: row.seq)]
         received = {e.lot for e in entries if e.kind == "received"}
         received |= {e.lot for e in events if e.kind == "received"}
@@ -251,16 +253,18 @@ class Register:
             Lots that were discarded are among them.
         """
         c = table.c
-        query = select(c.lot, c.id, c.kind, c.at, c.corrects, c.body).order_by(c.seq)
-        with in_words(self.name), self._engine.connect() as connection:
-            rows = connection.execute(query).all()
-        by_lot: dict[str, list[Entry]] = {}
-        with self._readable():
-            for lot, id_, kind, when, corrects, body in rows:
-                entry = Entry(lot, id_, kind, when, corrects, json.loads(body))
-                by_lot.setdefault(lot, []).append(entry)
-            found = [stock.summary(self._until(by_lot[lot], at)) for lot in sorted(by_lot)]
-        return tuple(summary for summary in found if summary)
+        query = select(c.lot, c.id, c.kind, c.at, c.corrects, c.body).order_by(c.lot, c.seq)
+        found = []
+        with self._readable(), closing(self._streamed(query)) as rows:
+            for _, own in groupby(rows, key=itemgetter(0)):
+                entries = [
+                    Entry(
+                        lot, id_, kind, when, corrects, json.loads(body) if kind in SUMMED else {}
+                    )
+                    for lot, id_, kind, when, corrects, body in own
+                ]
+                found.append(stock.summary(self._until(entries, at)))
+        return tuple(sorted((lot for lot in found if lot), key=lambda lot: lot.lot))
 
     def lot(self, lot: str, at: datetime | None = None) -> LotRecord:
         """
@@ -342,12 +346,15 @@ class Register:
             return BrokenRow(last.number + 1, "it is gone, with all that followed")
         return None
 
-    def _each(self) -> Generator[Row[Any], None, None]:
-        query = select(table).order_by(table.c.seq).execution_options(yield_per=_READ)
+    def _each(self) -> Generator[Any, None, None]:
+        return self._streamed(select(table).order_by(table.c.seq))
+
+    def _streamed(self, query: Select[Any]) -> Generator[Any, None, None]:
+        """Yield rows while they are fetched, so that no more than a few are held at once."""
         with (
             in_words(self.name),
             self._engine.connect() as connection,
-            connection.execute(query) as rows,
+            connection.execute(query.execution_options(yield_per=_READ)) as rows,
         ):
             yield from rows
 
@@ -382,17 +389,3 @@ class Register:
         except (InputError, LookupError, TypeError, ValueError) as error:
             message = "a row cannot be read: it is not as it was written; verify tells which"
             raise refusal(self.name, message) from error
-
-
-def _rows_with(
-    connection: Connection,
-    column: ColumnElement[str],
-    values: Sequence[str],
-    *also: ColumnElement[bool],
-) -> list[Row[Any]]:
-    """Rows in whose column one of the values stands, a few hundred values at a time."""
-    rows: list[Row[Any]] = []
-    for start in range(0, len(values), _AT_ONCE):
-        some = values[start : start + _AT_ONCE]
-        rows += connection.execute(select(table).where(column.in_(some), *also)).all()
-    return rows

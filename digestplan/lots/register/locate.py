@@ -15,8 +15,6 @@ if TYPE_CHECKING:
 
 VARIABLE = "DIGESTPLAN_REGISTER"
 
-_MAGIC = b"SQLite format 3\x00"
-
 
 class RegisterError(InputError):
     """The register cannot be opened, read or written, or refuses what it was given."""
@@ -105,7 +103,7 @@ def file_of(url: "URL") -> Path | None:
 
 def look_at(file: Path, *, create: bool) -> None:
     """
-    Refuse, in words and without touching it, what cannot be a register.
+    Refuse, in words, a path at which no register can be.
 
     Parameters
     ----------
@@ -126,14 +124,11 @@ def look_at(file: Path, *, create: bool) -> None:
             return
         if not file.is_file():
             raise refusal(name, "this is not a file that a register could be kept in")
-        with file.open("rb") as opened:
-            start = opened.read(len(_MAGIC))
+        file.open("rb").close()
     except PermissionError:
         raise refusal(name, "you have no permission to read it") from None
     except OSError as error:
         raise refusal(name, f"it cannot be read ({error.strerror or error})") from None
-    if start and start != _MAGIC:
-        raise refusal(name, "this file is not a lot register, and was left as it is")
 
 
 def make_home(file: Path) -> None:

@@ -288,6 +288,9 @@ _STEPS = {
     "discarded": _Sums.discard,
 }
 
+# Events whose bodies a summary looks into; of the others it takes that they happened.
+SUMMED = frozenset({"received", "moved", "thawed", "assayed", "used", "weighed", "corrected"})
+
 
 def record(entries: Sequence[Entry]) -> LotRecord | None:
     """Return the history of one lot from what counts of it; None as with `summary`."""

@@ -1,17 +1,26 @@
 """The tables of a register, and the triggers that let rows in and never again out or over."""
 
+from collections.abc import Sequence
+from typing import Any
+
 from sqlalchemy import (
     CheckConstraint,
     Column,
+    ColumnElement,
+    Connection,
     Index,
     Integer,
     MetaData,
+    Row,
     String,
     Table,
     Text,
+    select,
 )
 
 metadata = MetaData()
+
+_AT_ONCE = 500  # values in one IN (…)
 
 _name = String(200).with_variant(Text(), "sqlite")  # a STRICT table knows TEXT alone
 _hash = String(64).with_variant(Text(), "sqlite")
@@ -90,3 +99,33 @@ def guards(dialect: str) -> list[str]:
     if dialect == "postgresql":
         return [_POSTGRES_FUNCTION, *(_POSTGRES_REFUSES.format(table=t) for t in tables)]
     return []
+
+
+def rows_with(
+    connection: Connection,
+    column: ColumnElement[str],
+    values: Sequence[str],
+    *also: ColumnElement[bool],
+) -> list[Row[Any]]:
+    """
+    Return the events in whose column one of some values stands.
+
+    Parameters
+    ----------
+    connection
+        Open.
+    column, values
+        The column, and what may stand in it: any number, asked for a few hundred at a time.
+    also
+        What else must hold.
+
+    Returns
+    -------
+    rows
+        In no particular order.
+    """
+    rows: list[Row[Any]] = []
+    for start in range(0, len(values), _AT_ONCE):
+        some = values[start : start + _AT_ONCE]
+        rows += connection.execute(select(events).where(column.in_(some), *also)).all()
+    return rows
