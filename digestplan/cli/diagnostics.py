@@ -1,6 +1,7 @@
 """Standard error and exit statuses: this module alone writes the one and knows the other."""
 
 import os
+import sys
 import traceback
 from collections.abc import Callable
 

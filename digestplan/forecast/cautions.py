@@ -48,7 +48,7 @@ def cautions_of(
         elif isinstance(step, DemineraliseForecast):
             found += of_demineralise(job, step)
         elif isinstance(step, RinseForecast):
-            found += of_rinse(job, step)
+            found += of_rinse(step)
     found += of_meetings(job.plan)
     found += _of_plan(job, whole, visits)
     return tuple(sorted(found, key=lambda c: _ORDER[c.level]))

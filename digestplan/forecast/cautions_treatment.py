@@ -55,7 +55,7 @@ def _unrinsed(job: Job, index: int, substance: str) -> Iterator[Caution]:
     yield told("no-rinse", index, substance=substance, amount=amount)
 
 
-def of_rinse(job: Job, result: RinseForecast) -> Iterator[Caution]:
+def of_rinse(result: RinseForecast) -> Iterator[Caution]:
     """Yield what a rinse leaves to be desired."""
     for substance, more in result.more_exchanges.items():
         name = _name(substance)

@@ -54,7 +54,7 @@ class Liquid:
 
 @dataclass(frozen=True, slots=True, eq=False)
 class CarriedOver:
-    """What a piece brings into its next liquid, as concentrations in that liquid. [mol/L]"""
+    """What a piece brings into its next liquid, as concentrations [mol/L] in that liquid."""
 
     amounts: Mapping[str, Array] = field(default_factory=dict)
     temperature: float = ROOM

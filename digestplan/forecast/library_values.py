@@ -11,10 +11,14 @@ GENERAL = "general"
 
 def library_value(section: str, key: str, name: str) -> Value | None:
     """Return one constant of the library as a value, or None where the entry has none."""
-    find = {"reagent": library.reagent, "solute": library.solute, "material": library.material}
-    entry = find[section](key)
-    known = entry.values.get(name)
-    return None if known is None else _value(entry.key, name, known)
+    if section == "reagent":
+        key = library.reagent(key).key
+        known = library.reagent(key).values.get(name)
+    elif section == "solute":
+        known = library.solute(key).values.get(name)
+    else:
+        known = library.material(key).values.get(name)
+    return None if known is None else _value(key, name, known)
 
 
 def _value(key: str, name: str, known: LibraryValue) -> Value:

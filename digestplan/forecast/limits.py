@@ -5,9 +5,9 @@ from collections.abc import Iterator, Sequence
 import numpy as np
 from numpy.typing import NDArray
 
-from digestplan.forecast.told import percent
 from digestplan.forecast.result import DigestForecast, StepForecast
 from digestplan.forecast.steps.base import Job
+from digestplan.forecast.told import percent
 
 Array = NDArray[np.float64]
 
@@ -58,8 +58,17 @@ def _makes_uncertain(job: Job, digests: Sequence[DigestForecast]) -> Iterator[st
     shares = uncertainty_shares(job, np.minimum.reduce([d.start_h + d.ready_h for d in digests]))
     telling = [(name, share) for name, share in shares if share >= _WORTH_TELLING][:3]
     if telling:
-        names = ", ".join(f"{name} ({percent(share)})" for name, share in telling)
+        names = ", ".join(f"{_spoken(name)} ({percent(share)})" for name, share in telling)
         yield f"Most of the uncertainty about when comes from {names}."
+
+
+def _spoken(key: str) -> str:
+    """Say an input's key as people do: ``sample.known_run.duration`` is one of the known run."""
+    words = [word.replace("_", " ") for word in key.split(".")]
+    if len(words) == 1:
+        return words[0]
+    of, name = words[-2:]
+    return name if of in {"sample", "enzyme", "lot"} else f"{name} of the {of}"
 
 
 def uncertainty_shares(job: Job, hours: Array) -> list[tuple[str, float]]:

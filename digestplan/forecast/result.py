@@ -66,9 +66,9 @@ class DigestForecast(StepForecast):
 
     ``dose_unit`` is the unit of ``dose_at_end``; ``ready_h`` and ``too_far_h`` are the draws of
     hours to target and to the keep-loss limit from the step's start, shape (n_draws,), infinite
-    for never. ``liquid`` is what the enzyme works in, ``brought`` what the
-    piece brought along into it [mol/L]; ``harm_by_heat`` is the median keep loss by heat alone; ``enzyme_factor`` how many
-    times the enzyme each draw would have needed to reach the target, given for ever.
+    for never. ``liquid`` is what the enzyme works in, ``brought`` what the piece brought along
+    into it [mol/L]; ``harm_by_heat`` is the median keep loss by heat alone; ``enzyme_factor`` how
+    many times the enzyme each draw would have needed to reach the target, given for ever.
     """
 
     extent_at_end: Spread

@@ -40,6 +40,7 @@ def forecast_text(forecast: Forecast) -> str:
         _visits(forecast),
         _limits(forecast),
         _cautions(forecast),
+        "\n".join(_wrapped(remark, "  ", "") for remark in forecast.plan.remarks),
         _wrapped(_how(forecast)),
     ]
     return "\n\n".join(block for block in blocks if block) + "\n"
@@ -89,13 +90,16 @@ def _facts(step: StepForecast) -> Iterator[str]:
             share = words.percent(step.left_share[name])
             yield f"{name.replace('-', ' ')} left in the piece: {1e3 * amount:.2g} mM ({share})"
     elif isinstance(step, DigestForecast) and step.do == "digest":
-        if step.ph_at_temperature is not None:
-            calcium = (
-                ""
-                if step.free_calcium is None
-                else f", {1e3 * step.free_calcium:.2g} mM free calcium"
-            )
-            yield f"in the warm: pH {step.ph_at_temperature:.2f}{calcium}"
+        yield from _liquid(step)
+
+
+def _liquid(step: DigestForecast) -> Iterator[str]:
+    if step.ph_at_temperature is None:
+        return
+    calcium = (
+        "" if step.free_calcium is None else f", {1e3 * step.free_calcium:.2g} mM free calcium"
+    )
+    yield f"in the warm: pH {step.ph_at_temperature:.2f}{calcium}"
 
 
 def _rows(forecast: Forecast, step: StepForecast) -> Iterator[Row]:

@@ -44,7 +44,8 @@ def _window_sentence(forecast: Forecast) -> str:
             f"No safe moment{sure}: surely ready ({target}) only by {opens}, "
             f"but perhaps too far from {closes} on."
         )
-    return f"Ready ({target}) by {opens}, too far from {closes} on{sure.replace('sure', 'sure of each')}."
+    each = sure.replace("sure", "sure of each")
+    return f"Ready ({target}) by {opens}, too far from {closes} on{each}."
 
 
 def _not_ready(forecast: Forecast, target: str) -> str:

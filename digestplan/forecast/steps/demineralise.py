@@ -139,9 +139,10 @@ def _drawn(key: str, concentration: Value, volume: Value | None, draws: Draws) -
 def _mineral(plan: Plan, draws: Draws) -> tuple[Array, Array, Array]:
     """Calcium [mol] and carbonate [mol] of the piece, and calcium per volume [mol/L]."""
     sample = plan.sample
-    of_library = sample.material and sample.mineral_fraction is not None
-    known = library_value("material", sample.material, "calcium") if of_library else None
-    share = library_value("material", sample.material, "carbonate_fraction") if of_library else None
+    known = share = None
+    if sample.material is not None:
+        known = library_value("material", sample.material, "calcium")
+        share = library_value("material", sample.material, "carbonate_fraction")
     carbonate = 0.065 if share is None else draws.of(share)
     assert sample.mineral_fraction is not None
     mineral = mineral_by_share(draws.of(sample.mineral_fraction), carbonate)
@@ -198,7 +199,7 @@ def _resistances(
     ph: Value | None,
     draws: Draws,
 ) -> tuple[Array, Array, Array]:
-    """Doses that layer, surface and film would each need alone. [h mol/L]"""
+    """Doses [h mol/L] that layer, surface and film would each need alone."""
     values, per = reagent.values, reagent.values["per_calcium"]
     surface = np.full(draws.n_draws, np.inf)
     if "surface_velocity" in values:
@@ -290,11 +291,11 @@ def _harm(
 def _hydrogen_ions(
     step: Demineralise, reagent: _Reagent, course: BathCourse, draws: Draws
 ) -> Array:
-    """Mean concentration of hydrogen ions over the baths. [mol/L]"""
+    """Mean concentration [mol/L] of hydrogen ions over the baths."""
     if reagent.entry.chelator:
         ph = 7.4 if step.ph is None else draws.of(step.ph)
         return np.asarray(10.0 ** -np.broadcast_to(ph, (draws.n_draws,)))
-    fresh = reagent.concentration * (1 - np.mean(course.spent, axis=0) / 2)
+    fresh: Array = reagent.concentration * (1 - np.mean(course.spent, axis=0) / 2)
     if reagent.entry.strong:
         return fresh
     constant = 10.0 ** -buffer_pk(OF_ACID[reagent.entry.key], 0.0, _ROOM)

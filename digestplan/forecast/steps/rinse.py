@@ -74,7 +74,8 @@ def _left(step: Rinse, job: Job, substance: str, temperature: Array, ratio: Arra
     if pace is None:
         return left_at_equilibrium(ratio, step.exchanges)
     thetas = np.broadcast_to(pace * step.each, (step.exchanges, job.draws.n_draws))
-    return rinse(thetas, ratio, job.plan.sample.shape).left[-1]
+    left: Array = rinse(thetas, ratio, job.plan.sample.shape).left[-1]
+    return left
 
 
 def _more(
