@@ -127,7 +127,8 @@ class Cells:
     def cells_at(self, times: Array) -> NDArray[np.intp]:
         """Index of the cell that holds each of several times [h]."""
         found = np.searchsorted(self.edges, times) - 1
-        return np.clip(found, 0, self.n_cells - 1)
+        cells: NDArray[np.intp] = np.clip(found, 0, self.n_cells - 1)
+        return cells
 
     def temperatures(self, set_points: Array) -> Array:
         """Temperatures at the nodes, shape (n_nodes, n_draws), from set points [K]."""

@@ -29,7 +29,7 @@ CURVE = record(
     }
 )
 _STEP = {
-    "do": {"enum": ["digest", "hold"]},
+    "do": {"enum": ["digest", "hold", "stop"]},
     "start": _CLOCK,
     "end": _CLOCK,
     "hours": {"type": "number", "minimum": 0},
@@ -54,6 +54,33 @@ DIGEST = record(
     ph_at_temperature=_NUMBER,
     free_calcium_mM=_NUMBER,
 )
+_BEFORE = {key: item for key, item in _STEP.items() if key != "do"}
+DEMINERALISE = record(
+    {
+        "do": {"const": "demineralise"},
+        **_BEFORE,
+        "extent_at_end": SPREAD,
+        "hours_to_target": SPREAD,
+        "bath_spent": {"type": "array", "items": {"type": "number"}, "minItems": 1},
+        "acid_needed_mmol": {"type": "number"},
+        "keep_loss_at_end": SPREAD,
+    },
+    never_reaches_target=_SHARE,
+    bath_changes_h={"type": "array", "items": {"type": "number"}},
+    acid_held_mmol={"type": "number"},
+    carbon_dioxide_mL={"type": "number"},
+    curve=record({name: _NUMBERS for name in ("hours", "extent_p05", "extent_p50", "extent_p95")}),
+)
+RINSE = record(
+    {
+        "do": {"const": "rinse"},
+        **_BEFORE,
+        "carry_over": {"type": "object", "additionalProperties": {"type": "number"}},
+    },
+    left_share={"type": "object", "additionalProperties": _SHARE},
+    more_exchanges={"type": "object", "additionalProperties": {"type": ["integer", "null"]}},
+)
+STEP = {"oneOf": [DIGEST, DEMINERALISE, RINSE]}
 CAUTION = record(
     {
         "level": {"enum": ["stop", "care", "note"]},
@@ -78,7 +105,7 @@ FORECAST = record(
         "draws": {"type": "integer", "minimum": 1},
         "seed": {"type": "integer"},
         "confidence": _SHARE,
-        "steps": {"type": "array", "items": DIGEST, "minItems": 1},
+        "steps": {"type": "array", "items": STEP, "minItems": 1},
         "visits": {"type": "array", "items": VISIT},
         "cautions": {"type": "array", "items": CAUTION},
     },
