@@ -327,6 +327,19 @@ def test_an_answer_lost_after_the_commit_does_not_double(register, bottle, monke
     assert (len(n_tries), len(register.events())) == (2, 2)
 
 
+def test_a_connection_that_stays_lost_leaves_nobody_in_doubt(register, bottle, monkeypatch):
+    """Where no retry got an answer, the message says that the event may be there or not."""
+    register.append(bottle.received())
+
+    def lose(engine, work):
+        raise DBAPIError("COMMIT", {}, Exception("gone"), connection_invalidated=True)
+
+    monkeypatch.setattr(connections, "_once", lose)
+    monkeypatch.setattr(connections, "_PATIENCE", 0.05)
+    with pytest.raises(RegisterError, match="see whether the last entry is there"):
+        register.append(bottle.used(4, mass=0.006))
+
+
 def test_a_connection_that_the_server_cuts_is_made_anew(schema, bottle):
     """A restarted server costs a second try, and nothing that was written."""
     with open_register(schema) as register:

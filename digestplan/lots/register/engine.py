@@ -4,6 +4,7 @@ Appends are serialised: SQLite by ``BEGIN IMMEDIATE``, PostgreSQL by an advisory
 with the transaction, any other database by the row number, which only one of two can take.
 """
 
+import random
 import sqlite3
 import time
 from collections.abc import Callable
@@ -22,7 +23,7 @@ _LOCK = 0x64677065  # of this program, among a PostgreSQL database's advisory lo
 _OLDEST_SQLITE = (3, 37)  # STRICT tables
 _FLUSH = """SELECT set_config('synchronous_commit', 'on', true)
 WHERE current_setting('synchronous_commit') = 'off'"""
-_WAITS = (0.02, 0.1, 0.4)  # [s]
+_PATIENCE = 10.0  # [s]
 
 
 def make_engine(url: URL, timeout: float) -> Engine:
@@ -68,14 +69,16 @@ def append_to(engine: Engine, work: Callable[[Connection], T]) -> T:
     result
         What the work returned, after it was committed.
     """
-    for wait in _WAITS:
+    lost: DBAPIError | None = None  # after which it is not known whether it was written
+    until = time.monotonic() + _PATIENCE
+    while True:
         try:
             return _once(engine, work)
         except DBAPIError as error:
-            if not _passing(error, engine):
-                raise
-            time.sleep(wait)
-    return _once(engine, work)
+            lost = lost or (error if error.connection_invalidated else None)
+            if time.monotonic() > until or not _passing(error, engine):
+                raise (lost or error) from None
+        time.sleep(random.uniform(0.01, 0.1))  # noqa: S311 - so that two do not keep in step
 
 
 def leave_write_ahead_log(engine: Engine) -> None:

@@ -156,6 +156,8 @@ _SQLITE = {
     26: "this file is not a lot register, and was left as it is",
 }
 
+_UNSURE = "the connection was lost: see whether the last entry is there before you repeat it"
+
 _SQLSTATES = {
     "08": "the database cannot be reached",
     "25006": "the database can only be read; nothing was written",
@@ -177,7 +179,8 @@ def in_words(name: str) -> Iterator[None]:
     try:
         yield
     except DBAPIError as error:
-        raise refusal(name, _told(error.orig)) from error
+        unsure = f"; {_UNSURE}" if error.connection_invalidated else ""
+        raise refusal(name, _told(error.orig) + unsure) from error
     except sqlite3.Error as error:
         raise refusal(name, _told(error)) from error
     except NoSuchModuleError as error:
