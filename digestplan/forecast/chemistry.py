@@ -20,6 +20,7 @@ Amounts = Mapping[str, Array]
 _STRENGTH = 0.1  # [mol/L] ionic strength of a digest
 _PHOSPHATE_PER_CALCIUM = 0.6  # apatite
 _BASE_PER_CALCIUM = 0.6  # strong cations left over by dissolved mineral and its 1.4 H+
+_TRACES = 1e-5  # [mol/L] of a chelator: no more than the metals of any water
 _STRONG = ("hydrochloric-acid", "nitric-acid")
 _ROOM = 298.15
 
@@ -81,14 +82,15 @@ def calcium_left(
     Returns
     -------
     free
-        Shape (n_draws,); None where the plan says nothing of calcium and no chelator comes along.
-        [mol/L]
+        Shape (n_draws,); None where the plan says nothing of calcium and no more than traces of a
+        chelator come along. [mol/L]
     """
     ligands = {name: solutes[name] for name in ("edta", "citrate", "phosphate") if name in solutes}
     for name, key in (("edta", "edta"), ("citrate", "citric-acid")):
         if key in brought:
             ligands[name] = ligands.get(name, 0.0) + brought[key]
-    if stated is None and "edta" not in ligands and "citrate" not in ligands:
+    chelators = [ligands[name] for name in ("edta", "citrate") if name in ligands]
+    if stated is None and all(float(np.median(amount)) < _TRACES for amount in chelators):
         return None
     total = (0.0 if stated is None else stated) + brought.get("calcium", np.zeros(1))
     if not ligands:

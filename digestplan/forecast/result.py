@@ -108,7 +108,8 @@ class DemineraliseForecast(StepForecast):
     change_times
         When the bath is changed, from the step's start. [h]
     reagent_needed, reagent_held
-        What the mineral needs, and what all baths hold that can be used: medians. [mol]
+        What the mineral that is still there at the start needs, and what all baths hold that can
+        be used: medians. [mol]
     carbon_dioxide
         Gas given off, at the bath's temperature: median. [mL]
     keep_loss_at_end

@@ -47,7 +47,8 @@ Array = NDArray[np.float64]
 END_POINT = 0.95  # of the mineral: common practice, about what radiography calls done
 _ROOM = 298.15  # [K] of the reagents' diffusivities
 _SURFACE_AT = 285.15  # [K] EDTA's surface rate was measured from 4 to 20 °C
-_STILL = 0.1  # an unstirred film lets through a tenth
+_STILL = 0.3  # what an unstirred film lets through of a stirred one
+_SALT_PER_CALCIUM = 1.4  # acid that the mineral has turned into salt
 _RAMP_PIECES = 4
 _CURVE = 25
 _DRAWS_OF_CURVE = 400  # enough for a picture
@@ -91,7 +92,7 @@ def run(
     plan, draws = job.plan, job.draws
     reagent = _drawn(step.reagent, step.concentration, step.volume, draws)
     calcium, carbonate, density = _mineral(plan, draws)
-    speed = _known_speed(plan, draws, density)
+    speed = _known_speed(step, plan, draws, density)
     pieces = _pieces(step, draws)
     stretches = [
         _stretch(hours, temperature, step, reagent, plan, draws, density, speed)
@@ -186,8 +187,11 @@ def _stretch(
     layer, reaction, film = _resistances(
         reagent, temperature, length, density, plan.sample.shape, step.ph, draws
     )
-    still = 1.0 if step.stirred else _STILL
-    return BathStretch(hours, layer / speed, reaction / speed, film / still / speed)
+    return BathStretch(hours, layer / speed, reaction / speed, film / _film_share(step) / speed)
+
+
+def _film_share(step: Demineralise) -> float:
+    return 1.0 if step.stirred else _STILL
 
 
 def _resistances(
@@ -223,10 +227,13 @@ def _ph_factor(ph: Value | None, draws: Draws) -> Array | float:
     return factor
 
 
-def _known_speed(plan: Plan, draws: Draws, density: Array) -> Array | float:
-    """How much faster than the library's constants the lab's own run went."""
+def _known_speed(step: Demineralise, plan: Plan, draws: Draws, density: Array) -> Array | float:
+    """How much faster than the library's constants the lab's own run with this reagent went.
+
+    It is taken to have been stirred, or left still, as the plan's step is.
+    """
     known = plan.sample.known_demineralisation
-    if known is None:
+    if known is None or known["reagent"] != step.reagent:
         return 1.0
     given = {name: value for name, value in known.items() if isinstance(value, Value)}
     reagent = _drawn(str(known["reagent"]), given["concentration"], None, draws)
@@ -243,7 +250,7 @@ def _known_speed(plan: Plan, draws: Draws, density: Array) -> Array | float:
     needed = (
         layer * layer_progress(extent, shape)
         + reaction * reaction_progress(extent, shape)
-        + film * film_progress(extent, shape)
+        + film / _film_share(step) * film_progress(extent, shape)
     )
     strength = reagent.concentration * np.minimum(reagent.values["usable"], 1.0)
     speed: Array = needed / strength / draws.of(given["duration"])
@@ -309,7 +316,7 @@ def _residues(reagent: _Reagent, course: BathCourse, plan: Plan, draws: Draws) -
     calcium = course.calcium_released[-1] / litres
     left = reagent.concentration
     if not reagent.entry.chelator:
-        left = np.maximum(left - reagent.values["per_calcium"] * calcium, 0.0)
+        left = np.maximum(left - _SALT_PER_CALCIUM * calcium, 0.0)
     return {reagent.entry.key: left, "calcium": calcium}
 
 
@@ -325,6 +332,7 @@ def _told(
     harm: Array,
 ) -> DemineraliseForecast:
     hours = sum(stretch.hours for stretch in step.programme)
+    still_there = 1.0 - course.extents[0]
     begin = on_clock(job.plan.start, carried.clock)
     ready = course.time_for_extent(END_POINT)
     times = np.linspace(0.0, hours, _CURVE)
@@ -343,7 +351,7 @@ def _told(
         never_reaches_target=float(np.isinf(ready).mean()),
         bath_spent=tuple(float(np.median(spent)) for spent in course.spent),
         change_times=tuple(changes),
-        reagent_needed=float(np.median(reagent.values["per_calcium"] * calcium)),
+        reagent_needed=float(np.median(reagent.values["per_calcium"] * calcium * still_there)),
         reagent_held=float(np.median(held)),
         carbon_dioxide=float(
             np.median(gas_volume(course.carbonate_released.sum(axis=0), warm))
