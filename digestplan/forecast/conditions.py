@@ -141,10 +141,14 @@ def rates_at(
     rates
         Each of shape (n_nodes, n_draws).
     """
-    law, full = enzyme.enzyme.inactivation, np.broadcast_shapes
-    shape = full(temperature.shape, enzyme["reference_temperature"].shape)
-    temperature = np.broadcast_to(temperature, shape)
-    activity = rate_factor(enzyme, temperature) * activity_factor(enzyme, liquid, temperature)
+    law = enzyme.enzyme.inactivation
+    shape = np.broadcast_shapes(temperature.shape, enzyme["reference_temperature"].shape)
+    activity, factor = (
+        rate_factor(enzyme, temperature),
+        activity_factor(enzyme, liquid, temperature),
+    )
+    if not isinstance(factor, float):
+        activity = activity * factor
     second = autolysis = penetration = None
     if law == "two_stage":
         second = _at(enzyme, "second_inactivation_rate", "second_inactivation_energy", temperature)
@@ -154,13 +158,17 @@ def rates_at(
     if half_thickness is not None:
         scale = stokes_einstein_factor(temperature, enzyme["reference_temperature"])
         penetration = enzyme["diffusivity"] * scale / half_thickness**2
+
+    def full(rate: Array | None) -> Array | None:
+        return None if rate is None else np.broadcast_to(rate, shape)
+
     return Rates(
         np.broadcast_to(activity, shape),
         np.broadcast_to(inactivation_rate(enzyme, temperature), shape),
-        second,
-        autolysis,
-        heat_damage_rate(damage, temperature),
-        penetration,
+        full(second),
+        full(autolysis),
+        full(heat_damage_rate(damage, temperature)),
+        full(penetration),
     )
 
 

@@ -12,6 +12,7 @@ from digestplan.forecast.told import percent
 Array = NDArray[np.float64]
 
 _WORTH_TELLING = 0.1
+_CHILLED = 10.0  # [K] below the warmest
 
 
 def limits_of(job: Job, steps: Sequence[StepForecast]) -> tuple[str, ...]:
@@ -48,10 +49,24 @@ def _holds_up(job: Job, digests: Sequence[DigestForecast]) -> Iterator[str]:
         yield "The way in: enzyme reaches the centre later than the rim."
     elif residual < 0.2:
         yield f"The enzyme's life: {percent(residual)} of it is left at the end of the step."
+    elif (before_chill := _ready_before_chill(step)) < job.plan.confidence:
+        yield (
+            f"The chill: only {percent(before_chill)} of futures are ready before it. A later one, "
+            "or more enzyme, would help."
+        )
     elif step.hours_to_target.p50 is None:
         yield "Time: the target would be reached, but not before the step ends."
     else:
         yield "Nothing holds it up: more enzyme or more warmth would simply be faster."
+
+
+def _ready_before_chill(step: DigestForecast) -> float:
+    """Share of draws that are ready before the bath is cooled for good; 1 where it never is."""
+    warm = step.curve.temperature_c > step.curve.temperature_c.max() - _CHILLED
+    if warm[-1]:
+        return 1.0
+    last_warm = step.curve.hours[np.flatnonzero(warm)[-1]]
+    return float((step.ready_h <= last_warm).mean())
 
 
 def _makes_uncertain(job: Job, digests: Sequence[DigestForecast]) -> Iterator[str]:

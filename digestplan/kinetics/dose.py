@@ -75,6 +75,7 @@ class Course:
         )
         self._moving: dict[int, _Moving] = {}
         self._live: dict[int, int] = {}
+        self._passed: dict[int, tuple[tuple[Array, ...], tuple[Array, ...]]] = {}
         self.starts: list[State] = []
         state = start
         for cell in range(cells.n_cells):
@@ -244,6 +245,11 @@ class Course:
     # -- a cell in which the temperature changes ------------------------------------------
 
     def _transfers(self, cell: int) -> tuple[tuple[Array, ...], tuple[Array, ...]]:
+        if cell not in self._passed:
+            self._passed[cell] = self._transfers_of(cell)
+        return self._passed[cell]
+
+    def _transfers_of(self, cell: int) -> tuple[tuple[Array, ...], tuple[Array, ...]]:
         nodes, hours = list(self.cells.nodes[cell]), self._length(cell)
         first = self.rates.first[nodes]
         if self.rates.second is not None:

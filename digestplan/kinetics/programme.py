@@ -8,6 +8,7 @@ an incubator's error then cost one matrix product.
 import itertools
 from collections.abc import Sequence
 from dataclasses import dataclass
+from functools import lru_cache
 
 import numpy as np
 from numpy.typing import NDArray
@@ -232,6 +233,22 @@ def compile_programme(
     ----------
     .. [1] Newton's law of cooling; common practice.
     """
+    return _compiled(
+        tuple(legs), tuple(float(t) for t in nominal), lag, tuple(breaks), pieces, graded
+    )
+
+
+@lru_cache(maxsize=64)
+def _compiled(
+    legs: tuple[Leg, ...],
+    set_points: tuple[float, ...],
+    lag: float,
+    breaks: tuple[float, ...],
+    pieces: int,
+    graded: bool,
+) -> Cells:
+    """Cut a programme; the same one is asked for again and again while a plan is edited."""
+    nominal = np.array(set_points)
     builder = _Builder(len(nominal))
     identity = np.eye(len(nominal))
     sample = start = identity[0]

@@ -40,8 +40,10 @@ def arrhenius_factor(
     ----------
     .. [1] S. Arrhenius, Z. Phys. Chem. 4, 226, 1889.
     """
-    inverse = 1 / np.asarray(temperature) - 1 / np.asarray(reference_temperature)
-    return np.exp(-(np.asarray(activation_energy) / GAS_CONSTANT) * inverse)
+    scaled = np.asarray(activation_energy) / GAS_CONSTANT
+    # two passes over the large array, that of all nodes and draws, and no more
+    exponent = np.asarray(scaled / reference_temperature - scaled / np.asarray(temperature))
+    return np.exp(exponent, out=exponent) if exponent.ndim else np.exp(exponent)
 
 
 def eyring_factor(

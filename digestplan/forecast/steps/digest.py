@@ -65,7 +65,8 @@ def run(
     brought = _diluted(job, carried, volume) if isinstance(step, Digest) else {}
     timeline = Timeline(course, job.response, open_ended=open_ended)
     forecast = _told(step, index, job, carried.clock, timeline, liquid, set_points, brought)
-    temperature = course.cells.end_weights @ set_points
+    at_end = course.cells.end_weights @ set_points
+    temperature = np.broadcast_to(at_end, (job.draws.n_draws,))
     clock = carried.clock + course.cells.end
     after = replace(
         carried,
@@ -127,7 +128,10 @@ def _charges(step: Digest | Hold, job: Job, carried: Carried) -> tuple[dict[floa
 
 
 def _set_points(step: Digest | Hold, draws: Draws, carried: Carried) -> Array:
-    """Temperatures of the programme, shape (n_legs + 1, n_draws); the first is the sample's."""
+    """Temperatures of the programme, the sample's first, shape (n_legs + 1, n_draws).
+
+    Where no temperature has an error, one column stands for all draws: rates are then taken once.
+    """
     points = [draws.temperature(stretch.temperature) for stretch in step.programme]
     if step.start_temperature is not None:
         first = draws.of(step.start_temperature)
@@ -135,7 +139,8 @@ def _set_points(step: Digest | Hold, draws: Draws, carried: Carried) -> Array:
         first = carried.temperature
     else:
         first = points[0]
-    return np.stack([first, *points])
+    rows = np.stack([first, *points])
+    return rows[:, :1] if np.ptp(rows, axis=1).max() == 0 else rows
 
 
 def lag_of(step: Digest | Hold, volume: Array | None) -> float:
