@@ -62,11 +62,12 @@ def of_rinse(result: RinseForecast) -> Iterator[Caution]:
         if more is None:
             remedy = "No number of exchanges like these would do: make each longer, or larger."
         else:
-            remedy = f"About {more} more exchanges like these would do; so would longer ones."
+            exchanges = "exchange" if more == 1 else "exchanges"
+            remedy = f"{more} more {exchanges} like these would do; so would longer ones."
         yield told(
             "rinse-too-short",
             result.index,
-            amount=millimolar(result.carry_over[substance]),
+            amount=millimolar(result.carry_over_at_most[substance]),
             substance=name,
             remedy=remedy,
         )

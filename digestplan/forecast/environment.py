@@ -18,7 +18,7 @@ if TYPE_CHECKING:
 Array = NDArray[np.float64]
 
 ROOM = 298.15  # [K] at which a buffer's pH is set where the plan does not say
-_USUAL_BUFFER = 0.05  # [mol/L] where a plan names a buffer and no concentration
+USUAL_BUFFER = 0.05  # [mol/L] where a plan names a buffer and no concentration
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -85,7 +85,7 @@ def liquid_of(environment: Environment, draws: Draws, brought: CarriedOver | Non
     """
     ph = None if environment.ph is None else draws.of(environment.ph)
     ph_at = draws.optional(environment.ph_at, ROOM)
-    concentration = draws.optional(environment.buffer_concentration, _USUAL_BUFFER)
+    concentration = draws.optional(environment.buffer_concentration, USUAL_BUFFER)
     solutes = {name: draws.of(value) for name, value in environment.solutes.items()}
     amounts = brought.amounts if brought is not None else {}
     temperature = brought.temperature if brought is not None else ROOM

@@ -139,14 +139,17 @@ class RinseForecast(StepForecast):
     ----------
     carry_over
         What is left in the piece at the end, by substance: medians. [mol/L]
+    carry_over_at_most
+        The same, with the plan's confidence. [mol/L]
     left_share
         The same as a share of what was there before the rinse.
     more_exchanges
-        How many more exchanges would bring each substance under what the next digest bears, where
-        that is not met: None where no number of them would.
+        How many more exchanges would bring each substance under what the next digest bears, with
+        the plan's confidence, where that is not met: None where no number of them would.
     """
 
     carry_over: Mapping[str, float]
+    carry_over_at_most: Mapping[str, float]
     left_share: Mapping[str, float]
     more_exchanges: Mapping[str, int | None]
 

@@ -6,16 +6,19 @@ from dataclasses import replace
 import numpy as np
 from numpy.typing import NDArray
 
+from digestplan.forecast.environment import USUAL_BUFFER
 from digestplan.forecast.result import RinseForecast
 from digestplan.forecast.steps.base import Carried, Job
+from digestplan.forecast.tags import ACIDIC
 from digestplan.forecast.tissue import solute_clock, tissue_volume
-from digestplan.forecast.window import on_clock
-from digestplan.kinetics.rinse import exchanges_for, left_at_equilibrium, rinse
-from digestplan.plan.model import Digest, Rinse
+from digestplan.forecast.window import on_clock, quantile
+from digestplan.kinetics.rinse import left_at_equilibrium, rinse
+from digestplan.plan.model import Digest, Environment, Rinse
 
 Array = NDArray[np.float64]
 
-_MOST = 60  # exchanges that anybody would do
+_MOST = 60  # more exchanges than anybody would do
+_CHELATORS = ("edta", "citric-acid")
 _FALLBACK = 1e-3  # [mol/L] that a liquid of which nothing is stated bears
 _SHARE_OF_CALCIUM = 0.2  # of the calcium that a chelator may take
 _SHARE_OF_BUFFER = 0.04  # of the buffer that an acid may use up: about 0.1 of a pH unit
@@ -49,7 +52,10 @@ def run(
     draws = job.draws
     temperature = draws.temperature(step.temperature)
     ratio = draws.of(step.volume) / tissue_volume(job.plan, draws)
-    left = {name: _left(step, job, name, temperature, ratio) for name in carried.residues}
+    left = {
+        name: _left_after_each(step, job, name, temperature, ratio, step.exchanges)[-1]
+        for name in carried.residues
+    }
     after = {name: carried.residues[name] * left[name] for name in left}
     hours = step.exchanges * step.each
     begin = on_clock(job.plan.start, carried.clock)
@@ -61,6 +67,9 @@ def run(
         start=begin,
         end=on_clock(begin, hours),
         carry_over={name: float(np.median(amount)) for name, amount in after.items()},
+        carry_over_at_most={
+            name: quantile(amount, job.plan.confidence) or 0.0 for name, amount in after.items()
+        },
         left_share={name: float(np.median(share)) for name, share in left.items()},
         more_exchanges=_more(step, index, job, carried, after, temperature, ratio),
     )
@@ -69,13 +78,15 @@ def run(
     )
 
 
-def _left(step: Rinse, job: Job, substance: str, temperature: Array, ratio: Array) -> Array:
+def _left_after_each(
+    step: Rinse, job: Job, substance: str, temperature: Array, ratio: Array, exchanges: int
+) -> Array:
+    """Share that is left before the first and after each of so many exchanges."""
     pace = solute_clock(job.plan, job.draws, substance, temperature)
     if pace is None:
-        return left_at_equilibrium(ratio, step.exchanges)
-    thetas = np.broadcast_to(pace * step.each, (step.exchanges, job.draws.n_draws))
-    left: Array = rinse(thetas, ratio, job.plan.sample.shape).left[-1]
-    return left
+        return left_at_equilibrium(ratio, np.arange(exchanges + 1.0)[:, np.newaxis])
+    thetas = np.broadcast_to(pace * step.each, (exchanges, job.draws.n_draws))
+    return rinse(thetas, ratio, job.plan.sample.shape).left
 
 
 def _more(
@@ -95,17 +106,21 @@ def _more(
         return wanted
     for name, amount in after.items():
         bears = bearable(name, digest, job)
-        if bears is None or float(np.median(amount)) <= bears:
+        if bears is None or _surely(amount <= bears, job):
             continue
-        target = bears / float(np.median(carried.residues[name]))
-        pace = solute_clock(job.plan, job.draws, name, temperature)
-        theta = np.inf if pace is None else float(np.median(pace)) * step.each
-        middle = float(np.median(ratio))
-        needed = exchanges_for(target, min(theta, 50.0), middle, job.plan.sample.shape, most=_MOST)[
-            0
-        ]
-        wanted[name] = int(needed) - step.exchanges if np.isfinite(needed) else None
+        most = step.exchanges
+        enough = np.zeros(0, dtype=bool)
+        while not enough.any() and most < step.exchanges + _MOST:
+            most = min(2 * most, step.exchanges + _MOST)
+            left = _left_after_each(step, job, name, temperature, ratio, most)
+            enough = _surely(carried.residues[name] * left <= bears, job)
+        wanted[name] = int(enough.argmax()) - step.exchanges if enough.any() else None
     return wanted
+
+
+def _surely(met: NDArray[np.bool_], job: Job) -> NDArray[np.bool_]:
+    """Whether something is met in as many draws as the plan wants to be sure of."""
+    return np.asarray(met.mean(axis=-1) >= job.plan.confidence)
 
 
 def bearable(substance: str, digest: Digest, job: Job) -> float | None:
@@ -129,17 +144,21 @@ def bearable(substance: str, digest: Digest, job: Job) -> float | None:
     tissue = float(np.median(tissue_volume(job.plan, job.draws)))
     volume = 10 * tissue if digest.volume is None else digest.volume.quantity.value
     dilution = (tissue + volume) / tissue
-    liquid = digest.environment
-    if substance in {"edta", "citric-acid"}:
-        if job.enzyme.enzyme.cofactor is None or not job.enzyme.enzyme.cofactor_needed:
-            return None
-        calcium = liquid.calcium
+    limits = []
+    if substance in _CHELATORS and job.enzyme.enzyme.cofactor and job.enzyme.enzyme.cofactor_needed:
+        calcium = digest.environment.calcium
         stated = _FALLBACK if calcium is None else calcium.quantity.value
-        return _SHARE_OF_CALCIUM * stated * dilution
+        limits.append(_SHARE_OF_CALCIUM * stated)
     if substance.endswith("-acid"):
-        buffer = liquid.buffer_concentration
-        stated = 0.05 if buffer is None else buffer.quantity.value
-        if liquid.ph is not None and liquid.ph.quantity.value < 4:
-            return None
-        return (_SHARE_OF_BUFFER * stated if liquid.buffer else _FALLBACK / 10) * dilution
-    return None
+        limits += _acid_limit(digest.environment)
+    return min(limits) * dilution if limits else None
+
+
+def _acid_limit(liquid: Environment) -> list[float]:
+    """What a liquid bears of an acid, in the liquid; an acid one bears any. [mol/L]."""
+    if liquid.ph is not None and liquid.ph.quantity.value < ACIDIC:
+        return []
+    if liquid.buffer is None:
+        return [_FALLBACK / 10]
+    buffer = liquid.buffer_concentration
+    return [_SHARE_OF_BUFFER * (USUAL_BUFFER if buffer is None else buffer.quantity.value)]
