@@ -59,25 +59,41 @@ def run(
     forecast, carried
         The step's forecast, and what it leaves to the next.
     """
+    course, set_points, after = advance(step, job, carried)
+    brought = after.residues if isinstance(step, Digest) else {}
+    timeline = Timeline(course, job.response, open_ended=open_ended)
+    forecast = _told(step, index, job, carried.clock, timeline, after.liquid, set_points, brought)
+    return forecast, after
+
+
+def advance(step: Digest | Hold, job: Job, carried: Carried) -> tuple[Course, Array, Carried]:
+    """
+    Take the enzyme through a step without telling anything of it.
+
+    Parameters
+    ----------
+    step, job, carried
+        As for `run`.
+
+    Returns
+    -------
+    course, set_points, carried
+        The course, the temperatures of its programme, and what the step leaves to the next.
+    """
     liquid, volume = _bath(step, job, carried)
     course = course_of_step(step, job, carried)
     set_points = _set_points(step, job.draws, carried)
-    brought = _diluted(job, carried, volume) if isinstance(step, Digest) else {}
-    timeline = Timeline(course, job.response, open_ended=open_ended)
-    forecast = _told(step, index, job, carried.clock, timeline, liquid, set_points, brought)
     at_end = course.cells.end_weights @ set_points
-    temperature = np.broadcast_to(at_end, (job.draws.n_draws,))
-    clock = carried.clock + course.cells.end
     after = replace(
         carried,
-        clock=clock,
-        temperature=temperature,
+        clock=carried.clock + course.cells.end,
+        temperature=np.broadcast_to(at_end, (job.draws.n_draws,)),
         state=course.at_end(),
         liquid=liquid,
         volume=volume,
         residues=_diluted(job, carried, volume) if isinstance(step, Digest) else carried.residues,
     )
-    return forecast, after
+    return course, set_points, after
 
 
 def course_of_step(step: Digest | Hold, job: Job, carried: Carried) -> Course:

@@ -45,10 +45,15 @@ def run(
         The step's forecast, and what it leaves to the next.
     """
     del open_ended  # a tube is not left at 95 °C until somebody comes
-    stopped = _stopped(step, job.enzyme.enzyme, carried)
-    waiting = Hold("hold", (_stretch(step, index, carried),), None, None)
+    waiting, stopped = as_hold(step, index, job, carried)
     forecast, after = digest.run(waiting, index, job, stopped, open_ended=False)
     return replace(forecast, do="stop"), after
+
+
+def as_hold(step: Stop, index: int, job: Job, carried: Carried) -> tuple[Hold, Carried]:
+    """Return the wait that a stop is, and the bath in which it begins."""
+    waiting = Hold("hold", (_stretch(step, index, carried),), None, None)
+    return waiting, _stopped(step, job.enzyme.enzyme, carried)
 
 
 def stops(step: Stop, enzyme: Enzyme) -> bool | None:
@@ -73,9 +78,9 @@ def stops(step: Stop, enzyme: Enzyme) -> bool | None:
     entry = library.enzyme(enzyme.key)
     if step.how != "inhibit":
         return step.how in entry.stopped_by
-    agent = (step.agent or "").lower().rstrip("s")
+    agent = (step.agent or "").strip().lower().rstrip("s")
     known = [name.lower().rstrip("s") for name in entry.inhibitors]
-    return any(agent and (agent in name or name in agent) for name in known)
+    return any(name in agent or (len(agent) > 3 and agent in name) for name in known)
 
 
 def _stopped(step: Stop, enzyme: Enzyme, carried: Carried) -> Carried:
