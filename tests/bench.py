@@ -117,7 +117,8 @@ PEAK = """
 import sys
 from digestplan.cli.main import main
 main(sys.argv[1:])
-print(next(l for l in open("/proc/self/status") if l.startswith("VmHWM")).split()[1], file=sys.stderr)
+told = next(line for line in open("/proc/self/status") if line.startswith("VmHWM"))
+print(told.split()[1], file=sys.stderr)
 """
 
 

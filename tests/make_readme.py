@@ -10,7 +10,9 @@ from digestplan.cli.main import main as command
 
 ROOT = Path(__file__).parents[1]
 README = ROOT / "README.md"
-BLOCK = re.compile(r"(?P<head>```\n\$ digestplan (?P<words>[^\n]+)\n)(?P<printed>.*?)(?P<end>```)", re.S)
+BLOCK = re.compile(
+    r"(?P<head>```\n\$ digestplan (?P<words>[^\n]+)\n)(?P<printed>.*?)(?P<end>```)", re.DOTALL
+)
 
 
 def printed(words: str) -> str:

@@ -14,7 +14,8 @@ try:
     main({arguments!r})
 except SystemExit:
     pass
-print("LOADED", *sorted({{name.split(".")[0] for name in sys.modules}} & {heavy!r}), file=sys.stderr)
+roots = {{name.split(".")[0] for name in sys.modules}}
+print("LOADED", *sorted(roots & {heavy!r}), file=sys.stderr)
 print("SUBMODULES", *(n for n in {submodules!r} if n in sys.modules), file=sys.stderr)
 """
 HEAVY = {

@@ -60,8 +60,7 @@ def test_links_between_documents_lead_somewhere():
     """Relative links of the documents point to files that exist."""
     broken = []
     for path in [README, ROOT / "DEVELOPERS.md", *DOCS.glob("*.md")]:
-        for target in re.findall(r"\]\(([^)#:]+)(?:#[^)]*)?\)", path.read_text("utf-8")):
-            if not (path.parent / target).exists():
-                broken.append(f"{path.name}: {target}")
+        targets = re.findall(r"\]\(([^)#:]+)(?:#[^)]*)?\)", path.read_text("utf-8"))
+        broken += [f"{path.name}: {t}" for t in targets if not (path.parent / t).exists()]
 
     assert broken == []

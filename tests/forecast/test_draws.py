@@ -48,7 +48,7 @@ def test_more_inputs_than_the_vector_is_long():
 
 
 def test_the_mean_of_a_smooth_function_is_nearer_than_chance():
-    """Two thousand points integrate a smooth function of ten inputs ten times better than chance."""
+    """A smooth function of ten inputs is integrated ten times better than by chance."""
     function = lambda x: np.prod(1 + (x - 0.5) / 3, axis=0)  # noqa: E731 - its mean is 1
     ours = [abs(function(lattice_points(2000, 10, seed)).mean() - 1) for seed in range(20)]
     rngs = [np.random.default_rng(seed) for seed in range(20)]

@@ -2,7 +2,8 @@
 
 Run ``python -m tests.reference.make_lattice``: it searches, component by component, among random
 odd candidates for the one with the least worst-case error (Sloan and Reztsov 2002: product weights,
-periodic kernel), averaged over lattices of 2^8 to 2^15 points so that any number of draws is served.
+periodic kernel), averaged over lattices of 2^8 to 2^15 points, so that any number of draws is
+served.
 """
 
 import numpy as np

@@ -69,7 +69,7 @@ DEMINERALISE = record(
     bath_changes_h={"type": "array", "items": {"type": "number"}},
     acid_held_mmol={"type": "number"},
     carbon_dioxide_mL={"type": "number"},
-    curve=record({name: _NUMBERS for name in ("hours", "extent_p05", "extent_p50", "extent_p95")}),
+    curve=record(dict.fromkeys(("hours", "extent_p05", "extent_p50", "extent_p95"), _NUMBERS)),
 )
 RINSE = record(
     {
