@@ -10,6 +10,7 @@ from digestplan.forecast.conditions import inactivation_rate, rate_factor
 from digestplan.forecast.environment import calcium_factor, ph_factor
 from digestplan.forecast.result import Caution, DigestForecast
 from digestplan.forecast.steps.base import Job
+from digestplan.forecast.steps.rinse import CHELATORS
 from digestplan.forecast.steps.stop import stops
 from digestplan.forecast.told import celsius, listed, millimolar, percent, told
 from digestplan.forecast.window import quantile
@@ -26,6 +27,8 @@ _SAID = {
     "chill": "Chilling",
 }
 _PH_WORTH_TELLING = 0.15
+_STOPPED = 0.05  # of the enzyme that heat may leave
+_TRACES = 1e-5  # [mol/L] of a chelator that no calcium misses
 _SLOW = 0.7  # of the best rate, below which it is worth telling
 
 
@@ -89,17 +92,27 @@ def _of_liquid(job: Job, step: Digest, result: DigestForecast) -> Iterator[Cauti
             yield told("ph-outside-range", result.index, range=f"{low:g} to {high:g}", **filling)
         elif share < _SLOW:
             yield told("ph-slows", result.index, share=percent(share), **filling)
-    if enzyme.cofactor == "calcium" and result.free_calcium is None:
-        if enzyme.cofactor_needed:
+    yield from _of_calcium(job, result)
+    if enzyme.key is not None and library.enzyme(enzyme.key).thiol:
+        cysteine = step.environment.solutes.get("cysteine")
+        if cysteine is None or cysteine.quantity.value == 0:
+            yield told("thiol-missing", result.index, enzyme=enzyme.name)
+
+
+def _of_calcium(job: Job, result: DigestForecast) -> Iterator[Caution]:
+    enzyme = job.enzyme.enzyme
+    if result.free_calcium is None:
+        if enzyme.cofactor == "calcium" and enzyme.cofactor_needed:
             yield told("calcium-missing", result.index, enzyme=enzyme.name)
-    elif result.free_calcium is not None:
-        share = float(np.median(calcium_factor(job.enzyme, liquid)))
-        if share < _SLOW:
-            filling = {"calcium": millimolar(result.free_calcium), "share": percent(share)}
-            if result.brought:
-                yield told("chelator-into-calcium-enzyme", result.index, **filling)
-            else:
-                yield told("calcium-low", result.index, enzyme=enzyme.name, **filling)
+        return
+    share = float(np.median(calcium_factor(job.enzyme, result.liquid)))
+    if share >= _SLOW:
+        return
+    filling = {"calcium": millimolar(result.free_calcium), "share": percent(share)}
+    if any(float(np.median(result.brought.get(name, 0.0))) > _TRACES for name in CHELATORS):
+        yield told("chelator-into-calcium-enzyme", result.index, **filling)
+    else:
+        yield told("calcium-low", result.index, enzyme=enzyme.name, **filling)
 
 
 def _of_amount(job: Job, step: Digest, result: DigestForecast) -> Iterator[Caution]:
@@ -177,19 +190,18 @@ def _of_stop(job: Job, step: Stop, result: DigestForecast) -> Iterator[Caution]:
         share = float(np.median(rate_factor(job.enzyme, cold)))
         yield told("chilling-only-slows", result.index, enzyme=enzyme.name, share=percent(share))
         return
-    if enzyme.key is None:
-        return
-    entry = library.enzyme(enzyme.key)
     residual = result.residual_activity_at_end.p50 or 0.0
-    fails = not stops(step, enzyme) or (step.how == "heat" and residual > 0.05)
-    if fails:
-        yield told(
-            "stop-does-not-stop",
-            result.index,
-            how=how,
-            enzyme=enzyme.name,
-            residual=percent(residual),
-            stops=", ".join(_SAID[name].lower() for name in entry.stopped_by),
-        )
-    elif step.how in entry.reversible:
-        yield told("stop-is-reversible", result.index, how=how, enzyme=enzyme.name)
+    if step.how == "heat":
+        works: bool | None = residual <= _STOPPED
+    else:
+        works = stops(step, enzyme)
+    if works is None:
+        yield told("stop-not-known", result.index, how=how, enzyme=enzyme.name)
+    elif not works:
+        by = library.enzyme(enzyme.key).stopped_by if enzyme.key else ()
+        means = ", ".join(_SAID[name].lower() for name in by) or "not known here"
+        filling = {"how": how, "enzyme": enzyme.name, "residual": percent(residual)}
+        yield told("stop-does-not-stop", result.index, stops=means, **filling)
+    elif enzyme.key and step.how in library.enzyme(enzyme.key).reversible:
+        filling = {"how": how, "enzyme": enzyme.name, "residual": percent(residual)}
+        yield told("stop-is-reversible", result.index, **filling)

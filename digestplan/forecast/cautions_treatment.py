@@ -21,6 +21,7 @@ def of_demineralise(job: Job, result: DemineraliseForecast) -> Iterator[Caution]
     gas = f"{result.carbon_dioxide:.2g}"
     if not reagent.chelator:
         yield told("acid-handling", index, reagent=reagent.name)
+        yield told("old-collection-piece", index)
         hottest = max(s.temperature.quantity.value for s in step.programme)
         if hottest > _HOT:
             yield told("hot-acid", index, temperature=celsius(hottest))

@@ -9,7 +9,7 @@ _WORDS = {
     "hypochlorite": ("hypochlorite", "bleach"),
     "ammonia": ("ammonia", "ammonium hydroxide"),
     "organic": ("alcohol", "ethanol", "methanol", "propanol", "acetone", "xylene", "ether"),
-    "formaldehyde": ("formaldehyde", "formalin", "aldehyde"),
+    "formaldehyde": ("formaldehyde", "formalin", "formol"),
     "hydrochloric": ("hydrochloric",),
     "nitric": ("nitric",),
     "formic": ("formic",),
@@ -21,7 +21,7 @@ _WORDS = {
     "calcium": ("calcium",),
     "amine": ("tris",),
     "thiol": ("dithiothreitol", "mercaptoethanol", "cysteine", "glutathione", "thiol"),
-    "serine-inhibitor": ("sulfonyl", "organophosph", "fluorophosph", "fluoride"),
+    "serine-inhibitor": ("sulfonyl fluoride", "pmsf", "organophosph", "fluorophosph"),
 }
 
 
@@ -49,7 +49,7 @@ def tags_of(step: Step, plan: Plan) -> frozenset[str]:
         found = set(_in_words(step.agent or ""))
         if step.how == "acidify":
             found.add("acid")
-        return frozenset(found | _of_enzyme(plan))
+        return frozenset(found)
     if isinstance(step, Digest):
         return _of_digest(step, plan)
     assert isinstance(step, Hold)

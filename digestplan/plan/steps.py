@@ -5,7 +5,7 @@ from typing import Any
 
 from digestplan.plan.environment import checked_environment
 from digestplan.plan.field import STEPS
-from digestplan.plan.known import reagent_key
+from digestplan.plan.known import reagent_key, refuse_hydrofluoric
 from digestplan.plan.model import (
     Addition,
     Demineralise,
@@ -154,6 +154,7 @@ def _rinse(step: Section) -> Rinse:
     exchanges, each = step.needed("exchanges").quantity.value, step.needed("each").quantity.value
     if exchanges * each > LONGEST:
         step.add("each", "this rinse takes more than ten years")
+    refuse_hydrofluoric(step, "fluid")
     return Rinse(
         do="rinse",
         fluid=step.text("fluid") or "",
@@ -178,6 +179,7 @@ def _stop(step: Section) -> Stop:
             step.add(key, f"nothing is added where {how} ends the digestion")
     if how == "inhibit" and "agent" not in step:
         step.missing("agent", "with inhibit")
+    refuse_hydrofluoric(step, "agent")
     agent = step.text("agent") or _AGENTS.get(how)
     concentration: Value | None = step.value("concentration")
     hours = step.needed("for").quantity.value

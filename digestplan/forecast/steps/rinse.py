@@ -18,7 +18,7 @@ from digestplan.plan.model import Digest, Environment, Rinse
 Array = NDArray[np.float64]
 
 _MOST = 60  # more exchanges than anybody would do
-_CHELATORS = ("edta", "citric-acid")
+CHELATORS = ("edta", "citric-acid")
 _FALLBACK = 1e-3  # [mol/L] that a liquid of which nothing is stated bears
 _SHARE_OF_CALCIUM = 0.2  # of the calcium that a chelator may take
 _SHARE_OF_BUFFER = 0.04  # of the buffer that an acid may use up: about 0.1 of a pH unit
@@ -145,7 +145,7 @@ def bearable(substance: str, digest: Digest, job: Job) -> float | None:
     volume = 10 * tissue if digest.volume is None else digest.volume.quantity.value
     dilution = (tissue + volume) / tissue
     limits = []
-    if substance in _CHELATORS and job.enzyme.enzyme.cofactor and job.enzyme.enzyme.cofactor_needed:
+    if substance in CHELATORS and job.enzyme.enzyme.cofactor and job.enzyme.enzyme.cofactor_needed:
         calcium = digest.environment.calcium
         stated = _FALLBACK if calcium is None else calcium.quantity.value
         limits.append(_SHARE_OF_CALCIUM * stated)
