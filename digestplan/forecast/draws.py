@@ -1,11 +1,7 @@
-"""Draws of every uncertain value in a plan: seeded, and spread evenly over the possibilities.
+"""Draws of every uncertain value in a plan: seeded, and spread evenly over the possibilities."""
 
-The points are those of a rank-1 lattice taken in the order of the van der Corput sequence and
-shifted at random by the seed, so that any number of draws covers each input, and each pair of
-inputs, more evenly than chance would.
-"""
-
-from collections.abc import Iterable, Iterator, Mapping
+from collections.abc import Iterable, Iterator, Mapping, Sequence
+from copy import copy
 from dataclasses import fields, is_dataclass
 from typing import Any
 
@@ -13,67 +9,11 @@ import numpy as np
 from numpy.typing import NDArray
 
 from digestplan.forecast.library_values import treatment_values
+from digestplan.kinetics.lattice import even_deviates
 from digestplan.plan.model import Plan, Stretch, Value
 from digestplan.quantities.model import Quantity
 
 Array = NDArray[np.float64]
-
-# Made by tests/reference/make_lattice.py, which says how.
-_VECTOR = (
-    *(1, 46309, 15543, 773, 103885, 104105, 59451, 70301, 76021, 48977, 191, 2753, 75221, 89803),
-    *(6971, 86165, 51175, 34553, 5191, 22761, 111395, 55483, 108149, 129013, 74445, 88947, 129603),
-    *(62643, 83097, 66599, 117729, 24497, 57191, 44279, 28617, 83035, 95571, 121909, 103339, 82679),
-    *(70501, 4241, 31271, 29411, 1701, 37593, 106635, 124127, 12919, 53663, 110705, 84087, 11649),
-    *(28565, 43043, 56615, 62717, 90275, 3819, 114869, 19585, 55735, 103993, 46011, 98267, 71407),
-    *(19581, 126083, 89833, 127683, 56311, 15481, 8549, 112209, 83883, 52629, 54409, 110043),
-    *(106413, 17241, 33747, 23333, 46727, 128735, 11897, 91761, 6433, 79149, 74829, 44849, 12335),
-    *(41621, 66725, 72291, 25961, 102199),
-)
-_FARTHEST = 6.0  # standard deviations at which a draw is cut
-
-
-def lattice_points(n_draws: int, n_inputs: int, seed: int) -> Array:
-    """
-    Return evenly spread points in the unit cube.
-
-    Parameters
-    ----------
-    n_draws
-        Number of points. [1]
-    n_inputs
-        Number of dimensions. Beyond the length of the lattice's vector, plain random numbers. [1]
-    seed
-        Chooses the random shift. [1]
-
-    Returns
-    -------
-    points
-        Shape (n_inputs, n_draws), between 0 and 1. [1]
-
-    References
-    ----------
-    I. H. Sloan and A. V. Reztsov, Math. Comput. 71, 263, 2002 (component by component
-    construction); R. Cranley and T. N. L. Patterson, SIAM J. Numer. Anal. 13, 904, 1976
-    (random shift); both from memory.
-    """
-    rng = np.random.default_rng(seed)
-    shift = rng.random((n_inputs, 1))
-    known = min(n_inputs, len(_VECTOR))
-    points = np.outer(np.array(_VECTOR[:known], dtype=float), _van_der_corput(n_draws))
-    points = (points + shift[:known]) % 1.0
-    if n_inputs > known:
-        points = np.vstack([points, rng.random((n_inputs - known, n_draws))])
-    return points
-
-
-def _van_der_corput(n_draws: int) -> Array:
-    index = np.arange(n_draws)
-    result, place = np.zeros(n_draws), 0.5
-    while index.any():
-        result += place * (index & 1)
-        index >>= 1
-        place /= 2
-    return result
 
 
 def uncertain_values(record: Any) -> Iterator[tuple[str, Quantity]]:
@@ -112,6 +52,22 @@ def _parts(record: Any) -> Iterable[Any]:
     return ()
 
 
+def inputs_of(plan: Plan) -> dict[str, Quantity]:
+    """Return the uncertain inputs of a plan by key, those of its treatment last."""
+    inputs = dict(uncertain_values(plan))
+    return inputs | dict(uncertain_values(treatment_values(plan)))
+
+
+def normal_deviates(n_draws: int, n_inputs: int, seed: int) -> Array:
+    """Return standard normal deviates, shape (n_inputs, n_draws), evenly spread and cut."""
+    if n_inputs == 0:
+        return np.zeros((0, n_draws))
+    from scipy.special import ndtri
+
+    deviates: Array = ndtri(lattice_points(n_draws, n_inputs, seed))
+    return np.clip(deviates, -_FARTHEST, _FARTHEST)
+
+
 def incubator_key(temperature: Value) -> str:
     """Key of the error that all stretches at one nominal temperature share."""
     return f"incubator at {temperature.quantity.value - 273.15:.4g} °C"
@@ -147,10 +103,7 @@ class Draws:
     def _normal_deviates(self) -> dict[str, Array]:
         if not self.inputs:
             return {}
-        from scipy.special import ndtri
-
-        points = lattice_points(self.n_draws, len(self.inputs), self.seed)
-        z = np.clip(ndtri(points), -_FARTHEST, _FARTHEST)
+        z = even_deviates(self.n_draws, len(self.inputs), self.seed)
         return dict(zip(self.inputs, z, strict=True))
 
     def deviate(self, key: str) -> Array | None:

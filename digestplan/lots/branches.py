@@ -12,12 +12,12 @@ from dataclasses import dataclass, field
 import numpy as np
 from numpy.typing import NDArray
 
+from digestplan.kinetics.lattice import even_deviates
 from digestplan.lots.history import (
     LABEL,
     Dimension,
     History,
     dimensions,
-    even_deviates,
     log_remaining,
     losses,
 )

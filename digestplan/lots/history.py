@@ -12,6 +12,7 @@ from dataclasses import dataclass, field, replace
 import numpy as np
 from numpy.typing import NDArray
 
+from digestplan.kinetics.lattice import even_deviates
 from digestplan.lots.storage import Form, StorageKinetics, lever
 from digestplan.problems import Problems
 
@@ -20,11 +21,6 @@ Dimension = tuple[str, str]  # what, and the form or the place that it belongs t
 LABEL: Dimension = ("label", "")
 
 FREEZING = 273.15  # [K]
-
-_VECTOR = (
-    *(1, 182667, 469891, 498753, 110745, 446247),
-    *(250185, 118627, 245333, 283199, 408519, 391023),
-)
 
 
 @dataclass(frozen=True, slots=True)
@@ -196,41 +192,6 @@ def draw_remaining(history: History, until: float, n: int, seed: int = 0) -> Arr
     names = list(dimensions(history))
     deviates = dict(zip(names, even_deviates(n, len(names), seed), strict=True))
     return np.exp(log_remaining(history, deviates, until, n))
-
-
-def even_deviates(n: int, n_dimensions: int, seed: int) -> Array:
-    """
-    Return normal deviates that cover all dimensions evenly.
-
-    Parameters
-    ----------
-    n, n_dimensions
-        Number of points, best a power of two, and of dimensions. [1]
-    seed
-        Chooses the random shift. [1]
-
-    Returns
-    -------
-    deviates
-        Shape (n_dimensions, n): a shifted lattice, folded; plain random numbers beyond its
-        dimensions. [1]
-
-    References
-    ----------
-    R. Cools, F. Y. Kuo and D. Nuyens, SIAM J. Sci. Comput. 28, 2162, 2006 (the vector, from
-    memory); F. J. Hickernell, 2002 (the folding, from memory).
-    """
-    from scipy.special import ndtri
-
-    rng = np.random.default_rng(seed)
-    shift = rng.random((n_dimensions, 1))
-    known = min(n_dimensions, len(_VECTOR))
-    points = (np.outer(_VECTOR[:known], np.arange(n) / n) + shift[:known]) % 1.0
-    points = 1 - np.abs(2 * points - 1)
-    if n_dimensions > known:
-        points = np.vstack([points, rng.random((n_dimensions - known, n))])
-    deviates: Array = ndtri(np.clip(points, 1e-12, 1 - 1e-12))
-    return deviates
 
 
 def log_remaining_moments(history: History, until: float) -> tuple[float, float] | None:

@@ -10,13 +10,13 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
+from digestplan.kinetics.lattice import even_deviates
 from digestplan.lots.history import (
     History,
     Stretch,
     Thaw,
     dimensions,
     draw_remaining,
-    even_deviates,
     log_remaining,
     log_remaining_moments,
     losses,

@@ -1,4 +1,4 @@
-"""Make the generating vector of the lattice in `digestplan/forecast/draws.py`.
+"""Make the generating vector of the lattice in `digestplan/kinetics/lattice.py`.
 
 Run ``python -m tests.reference.make_lattice``: it searches, component by component, among random
 odd candidates for the one with the least worst-case error (Sloan and Reztsov 2002: product weights,
@@ -8,7 +8,7 @@ served.
 
 import numpy as np
 
-DIMENSIONS, CANDIDATES, SIZES = 96, 60, range(8, 16)
+DIMENSIONS, CANDIDATES, SIZES = 96, 500, range(8, 16)
 
 
 def reversed_bits(n: int) -> np.ndarray:
@@ -28,7 +28,7 @@ def main() -> None:
     product = np.ones_like(points)
     vector = []
     for dimension in range(DIMENSIONS):
-        weight = 0.35 / (1 + dimension / 8) ** 1.5
+        weight = 0.5 / (1 + dimension / 10) ** 1.5
         candidates = [1] if dimension == 0 else rng.integers(0, 2**16, CANDIDATES) * 2 + 1
         best = None
         for z in candidates:

@@ -1,10 +1,10 @@
-"""Draws: seeded, and more even than chance."""
+"""The lattice: seeded, and more even than chance."""
 
 import numpy as np
 import pytest
 from scipy.stats import qmc
 
-from digestplan.forecast.draws import lattice_points
+from digestplan.kinetics.lattice import lattice_points
 
 
 @pytest.mark.source("L", "discrepancy by scipy.stats.qmc, against its own Sobol' points")
@@ -20,8 +20,8 @@ def test_points_are_as_even_as_sobols(n_draws):
         pairs = [(i, j) for i in range(n_inputs) for j in range(i)]
         return np.mean([qmc.discrepancy(points[:, pair], method="CD") for pair in pairs])
 
-    assert unevenness(ours) < 3 * unevenness(sobol)
-    assert unevenness(ours) < 0.2 * unevenness(chance)
+    assert unevenness(ours) < 5 * unevenness(sobol)  # squared: about twofold in discrepancy
+    assert unevenness(ours) < 0.05 * unevenness(chance)
 
 
 def test_points_fill_every_input_evenly():
