@@ -1,5 +1,6 @@
 """What is known: enzymes, materials, buffers, reagents and cautions, each value with its source."""
 
+from digestplan.library.assays import AssayEntry, assay, label_at_receipt
 from digestplan.library.load import (
     SECTIONS,
     SOURCE_KINDS,
@@ -27,6 +28,7 @@ __all__ = [
     "SECTIONS",
     "SOURCE_KINDS",
     "Acid",
+    "AssayEntry",
     "BufferEntry",
     "EnzymeEntry",
     "KnownRunEntry",
@@ -36,10 +38,12 @@ __all__ = [
     "SoluteEntry",
     "Storage",
     "UnknownKey",
+    "assay",
     "buffer",
     "enzyme",
     "keys",
     "known_run",
+    "label_at_receipt",
     "material",
     "near",
     "reagent",

@@ -16,6 +16,7 @@ SECTIONS = {
     "buffer": "buffers.toml",
     "reagent": "reagents.toml",
     "solute": "solutes.toml",
+    "assay": "assays.toml",
 }
 SOURCE_KINDS = ("published", "common practice", "from memory")
 QUANTITY_KINDS = {
@@ -60,6 +61,14 @@ QUANTITY_KINDS = {
     "extent": "fraction",
     "thickness": "length",
     "ph": "ph",
+    "wavelength": "length",
+    "extinction": "extinction",
+    "change": "rate",
+    "volume": "volume",
+    "path": "length",
+    "micromoles": "positive_number",
+    "within": "time",
+    "at_receipt": "positive_number",
 }
 
 
