@@ -118,7 +118,9 @@ def _check_autolysis(parts: Parts, lot: Section) -> None:
             message = 'this is missing for autolysis; write for instance volume = "3 mL"'
             lot.problems.add(f"steps[{index}].volume", message)
     place = lot.at("label_activity")
-    told = "label_activity" in lot or any(p.place == place for p in lot.problems.found)
+    told = (
+        "label_activity" in lot or "id" in lot or any(p.place == place for p in lot.problems.found)
+    )
     if parts.activity_unit != MASS and not told:
         lot.missing("label_activity", "for autolysis")
 

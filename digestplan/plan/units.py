@@ -122,8 +122,8 @@ class Units:
         return scaled or charge
 
     def _need_label(self, charge: Value) -> None:
-        if self.lot.label_activity is not None:
-            return
+        if self.lot.label_activity is not None or self.lot.id is not None:
+            return  # the register tells what is on the label of a lot that it has
         place = "lot.label_activity"
         if not any(problem.place == place for problem in self.problems.found):
             message = (
