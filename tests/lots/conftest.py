@@ -3,7 +3,7 @@
 ``DIGESTPLAN_TEST_POSTGRES`` holds the URL of a database in which schemas may be made and dropped.
 """
 
-# ruff: noqa: DTZ001 - the register keeps local wall-clock times
+
 
 import os
 import uuid

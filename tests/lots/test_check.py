@@ -20,7 +20,7 @@ from digestplan.lots.register.events import (
 from digestplan.lots.storage import StorageKinetics
 from digestplan.problems import InputError
 
-RECEIVED = datetime(2025, 3, 1, 9)  # noqa: DTZ001 - the ledger keeps local wall-clock time
+RECEIVED = datetime(2025, 3, 1, 9)
 SOLUTION = StorageKinetics(
     math.log(3e-4),
     math.log(2),

@@ -1,6 +1,6 @@
 """Events check themselves, and survive being written down."""
 
-# ruff: noqa: DTZ001 - the register keeps local wall-clock times
+
 
 import json
 import subprocess

@@ -1,6 +1,6 @@
 """One contract for every database: what goes in stays in, once, whole and as it was written."""
 
-# ruff: noqa: DTZ001 - the register keeps local wall-clock times
+
 
 import json
 import sqlite3

@@ -103,7 +103,7 @@ def test_a_foreign_file_is_refused_and_left_as_it_is(tmp_path, make):
         open_register(path)
     assert str(path) in str(refused.value)
     assert (path.read_bytes(), path.stat().st_mtime_ns) == before
-    assert os.listdir(tmp_path) == ["other.db"]  # noqa: PTH208
+    assert os.listdir(tmp_path) == ["other.db"]
 
 
 @pytest.mark.parametrize("length", [16, 50, 100, 4096, 5000])
@@ -137,7 +137,7 @@ def test_a_missing_folder_is_told(tmp_path):
     """A mistyped path makes no folders."""
     with pytest.raises(RegisterError, match="its folder does not exist"):
         open_register(tmp_path / "typo" / "lots.sqlite")
-    assert os.listdir(tmp_path) == []  # noqa: PTH208
+    assert os.listdir(tmp_path) == []
 
 
 def test_a_path_through_a_file_is_told(tmp_path):
@@ -171,7 +171,7 @@ def test_a_register_that_is_only_looked_for_is_not_made(tmp_path):
     """Asking for a list at a mistyped path leaves no empty register behind."""
     with pytest.raises(RegisterError, match="there is no lot register here"):
         open_register(tmp_path / "lots.sqlite", create=False)
-    assert os.listdir(tmp_path) == []  # noqa: PTH208
+    assert os.listdir(tmp_path) == []
 
 
 def test_an_empty_database_is_no_register_when_one_is_looked_for(schema):

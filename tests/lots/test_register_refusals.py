@@ -55,7 +55,7 @@ def test_a_read_only_folder(open_folder, bottle):
     assert path.read_bytes() == before
     with nobody(), pytest.raises(RegisterError, match=r"permitted|read-only"):
         open_register(open_folder / "new.sqlite")
-    assert os.listdir(open_folder) == ["lots.sqlite"]  # noqa: PTH208
+    assert os.listdir(open_folder) == ["lots.sqlite"]
 
 
 def test_a_file_in_a_folder_without_room_for_a_journal(open_folder, bottle):
@@ -86,7 +86,7 @@ def small_disk(tmp_path):
     folder = tmp_path / "disk"
     folder.mkdir()
     options = ["mount", "-t", "tmpfs", "-o", "size=256k", "digestplan-test", str(folder)]
-    if shutil.which("mount") is None or subprocess.run(options, capture_output=True).returncode:  # noqa: PLW1510
+    if shutil.which("mount") is None or subprocess.run(options, capture_output=True).returncode:
         pytest.skip("a small disk can be mounted by root alone")
     yield folder
     subprocess.run(["umount", str(folder)], check=True)

@@ -1,6 +1,6 @@
 """What the events of a lot add up to, corrections applied."""
 
-# ruff: noqa: DTZ001 - the register keeps local wall-clock times
+
 
 import random
 from datetime import datetime, timedelta

@@ -8,8 +8,8 @@ from digestplan.plan.clock import checked_start, checked_visits
 from digestplan.plan.model import Visit
 from digestplan.problems import Problems
 
-START = datetime(2026, 3, 12, 17, 30)  # noqa: DTZ001 - plans are local wall-clock time
-MORNING = Visit(datetime(2026, 3, 13, 8, 30), datetime(2026, 3, 13, 17, 0))  # noqa: DTZ001
+START = datetime(2026, 3, 12, 17, 30)
+MORNING = Visit(datetime(2026, 3, 13, 8, 30), datetime(2026, 3, 13, 17, 0))
 
 
 @pytest.mark.parametrize(
@@ -81,7 +81,7 @@ def test_visit_that_is_none(written, place, phrase):
         (time(17, 30), "time of day"),
         ("2026-03-12T17:30:00", "without quotation marks"),
         (20260312, "no date and time"),
-        (datetime(9999, 12, 31, 23, 59), "no year"),  # noqa: DTZ001
+        (datetime(9999, 12, 31, 23, 59), "no year"),
     ],
 )
 def test_start_that_is_none(written, phrase):

@@ -95,10 +95,10 @@ def test_value_of_the_example(example, place, value, spread, distribution, activ
 def test_words_of_the_example(example):
     """What is no quantity is as written."""
     assert example.title == "Porpoise tail tendon: collagen for fingerprinting"
-    assert example.start == datetime(2026, 3, 12, 17, 30)  # noqa: DTZ001
+    assert example.start == datetime(2026, 3, 12, 17, 30)
     (visit,) = example.visits
-    assert visit.start == datetime(2026, 3, 13, 8, 30)  # noqa: DTZ001
-    assert visit.end == datetime(2026, 3, 13, 17)  # noqa: DTZ001
+    assert visit.start == datetime(2026, 3, 13, 8, 30)
+    assert visit.end == datetime(2026, 3, 13, 17)
     assert example.confidence == 0.9
     assert (example.sample.material, example.sample.shape) == ("tendon", "slab")
     assert (example.sample.law, example.sample.law_values) == ("first_order", {})
