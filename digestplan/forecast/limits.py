@@ -37,27 +37,30 @@ def limits_of(job: Job, steps: Sequence[StepForecast]) -> tuple[str, ...]:
     return (*_holds_up(job, digests), *_makes_uncertain(job, digests))
 
 
-def _holds_up(job: Job, digests: Sequence[DigestForecast]) -> Iterator[str]:
+def _holds_up(job: Job, digests: Sequence[DigestForecast]) -> list[str]:
     target = job.plan.sample.target_extent.quantity.value
     working = [d for d in digests if d.do == "digest"] or digests
     step = next((d for d in working if d.hours_to_target.p50 is not None), working[-1])
     ceiling, residual = step.ceiling.p50 or 0.0, step.residual_activity_at_end.p50 or 0.0
     mean, centre = step.extent_at_end.p50 or 0.0, step.extent_at_centre.p50 or 0.0
+    before_chill = _ready_before_chill(step)
+    found = []
     if ceiling < target:
-        yield f"The enzyme dies before it is done: the ceiling is {percent(ceiling)}."
-    elif job.response.geometry is not None and mean - centre > 0.05:
-        yield "The way in: enzyme reaches the centre later than the rim."
-    elif residual < 0.2:
-        yield f"The enzyme's life: {percent(residual)} of it is left at the end of the step."
-    elif (before_chill := _ready_before_chill(step)) < job.plan.confidence:
-        yield (
+        found.append(f"The enzyme dies before it is done: the ceiling is {percent(ceiling)}.")
+    elif before_chill < job.plan.confidence:
+        found.append(
             f"The chill: only {percent(before_chill)} of futures are ready before it. A later one, "
             "or more enzyme, would help."
         )
-    elif step.hours_to_target.p50 is None:
-        yield "Time: the target would be reached, but not before the step ends."
-    else:
-        yield "Nothing holds it up: more enzyme or more warmth would simply be faster."
+    if job.response.geometry is not None and mean - centre > 0.05:
+        found.append("The way in: enzyme reaches the centre later than the rim.")
+    if residual < 0.2 and not found:
+        found.append(
+            f"The enzyme's life: {percent(residual)} of it is left at the end of the step."
+        )
+    if step.hours_to_target.p50 is None and not found:
+        found.append("Time: the target would be reached, but not before the step ends.")
+    return found or ["Nothing holds it up: more enzyme or more warmth would simply be faster."]
 
 
 def _ready_before_chill(step: DigestForecast) -> float:

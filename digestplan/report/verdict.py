@@ -81,6 +81,7 @@ def _visit_sentence(forecast: Forecast) -> str:
     best = max(forecast.visits, key=lambda chance: chance.in_time)
     when = words.visit(best.visit.start, best.visit.end)
     if best.in_time == 0:
-        reason = "not ready before it ends" if best.not_ready >= best.too_far else "too far by then"
-        return f"No visit meets it: {when} comes at a time when it is {reason}."
+        if best.not_ready >= best.too_far:
+            return f"No visit meets it: it is not ready by the end of {when}."
+        return f"No visit meets it: by {when} it is too far."
     return f"Come {when}: in time with a chance of {words.percent(best.in_time)}."
