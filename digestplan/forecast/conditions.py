@@ -105,7 +105,8 @@ def _at(enzyme: EnzymeDraws, rate: str, energy: str, temperature: Array) -> Arra
     if not enzyme.has(energy):
         return enzyme[rate] * np.ones(temperature.shape)
     reference = enzyme["reference_temperature"]
-    return enzyme[rate] * laws.arrhenius_factor(temperature, enzyme[energy], reference)
+    factor = laws.arrhenius_factor(temperature, enzyme[energy], reference)
+    return np.multiply(factor, enzyme[rate], out=factor)
 
 
 def rates_at(

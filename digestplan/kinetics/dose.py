@@ -92,14 +92,15 @@ class Course:
             return self.starts[cell + 1]
         return self.within(cell, time - float(self.cells.edges[cell]))
 
-    def at_each(self, times: Array) -> State:
-        """State at a time of its own for each draw, without modes. Shape (n_draws,). [h]."""
+    def at_each(self, times: Array, draws: NDArray[np.intp] | None = None) -> State:
+        """State at a time of its own for each draw, or each of some, without modes. [h]."""
         cells = self.cells.cells_at(times)
         whole = self.starts[0]
         parts = [np.flatnonzero(cells == cell) for cell in np.unique(cells)]
         order = np.argsort(np.concatenate(parts))
+        numbers = np.arange(len(times)) if draws is None else draws
         states = [
-            self.within(int(cells[p[0]]), times[p] - self.cells.edges[cells[p[0]]], p)
+            self.within(int(cells[p[0]]), times[p] - self.cells.edges[cells[p[0]]], numbers[p])
             for p in parts
         ]
         joined = {
@@ -149,6 +150,13 @@ class Course:
             return 1.0
         coverage: Array = 1 / (1 + state.charged / self.saturation[draws])
         return coverage
+
+    def effect_at(self, cell: int, draws: Draws = ALL) -> Array:
+        """Dose that active enzyme gives in an hour of a cell of constant temperature. [1]."""
+        activity: Array = self.rates.activity[self.cells.nodes[cell][0], draws]
+        if self.saturation is None:
+            return activity
+        return activity * self._coverage(self.starts[cell].of(draws), draws)
 
     def _constant(self, cell: int, elapsed: Array | float, draws: Draws, *, modes: bool) -> State:
         start, rates = self.starts[cell].of(draws), self.rates
@@ -304,7 +312,9 @@ class Course:
         for i, theta in enumerate(at_nodes):
             decay = np.exp(-geometry.squares[:live, None] * np.maximum(theta, 0.0))
             fresh, intermediate = self._carry(tuple(t[i] for t in transfers), *modal)
-            lacking = (fresh + self.intermediate_activity * intermediate) * decay
+            lacking = np.multiply(fresh, decay)
+            if self.rates.second is not None:
+                lacking = lacking + self.intermediate_activity * intermediate * decay
             rows.append(weight[i] * (active[i] - geometry.lack[:, :live] @ lacking))
         return np.stack(rows, axis=1)
 

@@ -39,7 +39,8 @@ def mean_of_decay(exponent: Array) -> Array:
 
 def _mean_of(lost: Array, exponent: Array) -> Array:
     """Mean of a decay, from e^-x - 1 and x."""
-    return np.divide(-lost, exponent, out=np.ones_like(exponent), where=exponent != 0)
+    mean = np.ones_like(exponent)
+    return np.divide(np.negative(lost), exponent, out=mean, where=exponent != 0)
 
 
 def _slope_of_mean(a: Array, b: Array) -> Array:

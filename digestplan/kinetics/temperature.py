@@ -41,9 +41,13 @@ def arrhenius_factor(
     .. [1] S. Arrhenius, Z. Phys. Chem. 4, 226, 1889.
     """
     scaled = np.asarray(activation_energy) / GAS_CONSTANT
-    # two passes over the large array, that of all nodes and draws, and no more
-    exponent = np.asarray(scaled / reference_temperature - scaled / np.asarray(temperature))
-    return np.exp(exponent, out=exponent) if exponent.ndim else np.exp(exponent)
+    at_reference = np.asarray(scaled / reference_temperature)
+    factor = np.asarray(np.divide(scaled, temperature))
+    if factor.ndim == 0 or np.broadcast_shapes(factor.shape, at_reference.shape) != factor.shape:
+        return np.exp(at_reference - factor)
+    # in place: one large array, not three, for fresh memory costs more than the exponential
+    np.subtract(at_reference, factor, out=factor)
+    return np.exp(factor, out=factor)
 
 
 def eyring_factor(
