@@ -1,12 +1,12 @@
 """A lot of the register, checked: from its events to what is left of it now."""
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from datetime import datetime, timedelta
 from typing import TYPE_CHECKING
 
 from digestplan.lots.assay import label_in_unit
 from digestplan.lots.grid import AssayedFraction
-from digestplan.lots.history import History, Stretch, Thaw
+from digestplan.lots.history import History, Opening, Stretch, Thaw
 from digestplan.lots.posterior import LotPosterior, posterior
 from digestplan.lots.storage import Form, StorageKinetics
 from digestplan.lots.uncertainty import Measured, propagate
@@ -16,6 +16,9 @@ from digestplan.quantities import Quantity, QuantityError, parse_conversion, par
 if TYPE_CHECKING:
     from digestplan.lots.register.events import Assayed
     from digestplan.lots.register.stock import LotRecord
+    from digestplan.lots.register.timeline import StorageStretch
+
+_OPENS = frozenset({"opened", "used", "assayed"})
 
 
 def check_lot(
@@ -82,24 +85,44 @@ def history_of(
     Returns
     -------
     history
-        Stretches and thaws.
+        Stretches, thaws and openings: the bottle is opened when it is said to be, and on every
+        day on which something was taken out of it.
     """
     start = began(record)
 
     def hours(at: datetime) -> float:
         return (at - start) / timedelta(hours=1)
 
+    stretches = record.stretches(until)
     return History(
         tuple(
             Stretch(
                 hours(s.start), s.hours, s.temperature, s.temperature_sd, s.form, s.opened, s.place
             )
-            for s in record.stretches(until)
+            for s in stretches
         ),
         tuple(Thaw(hours(t.at), t.form, t.count) for t in record.thaws if t.at <= until),
         kinetics,
         log_label_sd=log_label_sd,
+        openings=tuple(
+            Opening(hours(at), _form_at(stretches, at)) for at in _opened(record) if at <= until
+        ),
     )
+
+
+def _opened(record: "LotRecord") -> list[datetime]:
+    """When the bottle was opened: once a day at most."""
+    days = {record.received.at.date(): record.received.at} if record.received.opened else {}
+    for event in record.events:
+        if event.kind in _OPENS:
+            days.setdefault(event.at.date(), event.at)
+    return list(days.values())
+
+
+def _form_at(stretches: "Sequence[StorageStretch]", at: datetime) -> Form:
+    """Form of the enzyme when the bottle was opened, before anything else was done with it."""
+    before = [s.form for s in stretches if s.start <= at]
+    return before[-1] if before else stretches[0].form
 
 
 def assayed_fractions(record: "LotRecord") -> tuple[AssayedFraction, ...]:
@@ -114,8 +137,8 @@ def assayed_fractions(record: "LotRecord") -> tuple[AssayedFraction, ...]:
     Returns
     -------
     assays
-        One for each; an activity is divided by the label's, in the unit of the assay if the
-        certificate leads there.
+        One for each; an activity is divided by the number on the label, in the unit of the assay
+        if the certificate leads there.
     """
     start = began(record)
     assays = []
@@ -151,9 +174,8 @@ def _of_activity(event: "Assayed", record: "LotRecord", at: float) -> AssayedFra
         (one, other): factor
         for one, other, factor in map(parse_conversion, record.received.conversions)
     }
-    comparable = label_in_unit(
-        Measured.of(label), label.activity or "", found.activity or "", conversions
-    )
+    nominal = Measured(label.value)  # what is left is told as a multiple of the label's number
+    comparable = label_in_unit(nominal, label.activity or "", found.activity or "", conversions)
     fraction = propagate(
         lambda v: v["found"] / v["label"], {"found": Measured.of(found), "label": comparable}
     )

@@ -1,12 +1,13 @@
 """What a lot has been through, and what its history alone leaves of the label activity.
 
-ln(remaining) = ln(activity at receipt / label) − Σ k(T_i) Δt_i − thaws · loss per thaw, with an
-Arrhenius k for each form of the enzyme. The uncertain values are the dimensions of a history:
-each is a standard normal deviate, so that a lot is one point in as many dimensions.
+ln(remaining) = ln(activity at receipt / label) − Σ k(T_i) Δt_i − thaws · loss per thaw
+− openings · loss per opening, with an Arrhenius k for each form of the enzyme. The uncertain
+values are the dimensions of a history: each is a standard normal deviate, so that a lot is one
+point in as many dimensions.
 """
 
 import math
-from collections.abc import Iterable, Mapping
+from collections.abc import Iterable, Iterator, Mapping
 from dataclasses import dataclass, field, replace
 
 import numpy as np
@@ -18,6 +19,7 @@ from digestplan.problems import Problems
 
 Array = NDArray[np.float64]
 Dimension = tuple[str, str]  # what, and the form or the place that it belongs to
+LogLoss = tuple[float, float]  # logarithm of what is taken off ln(remaining), and its deviation
 LABEL: Dimension = ("label", "")
 
 FREEZING = 273.15  # [K]
@@ -60,12 +62,21 @@ class Thaw:
 
 
 @dataclass(frozen=True, slots=True)
+class Opening:
+    """One opening or more of the bottle, so many hours after receipt."""
+
+    at: float
+    form: Form = "dry"
+    count: int = 1
+
+
+@dataclass(frozen=True, slots=True)
 class History:
     """A lot's history since it was received.
 
     Attributes
     ----------
-    stretches, thaws
+    stretches, thaws, openings
         What happened; stretches may reach into the planned future.
     kinetics
         How each form dies.
@@ -78,13 +89,16 @@ class History:
     kinetics: Mapping[Form, StorageKinetics] = field(default_factory=dict)
     log_label: float = 0.0
     log_label_sd: float = 0.0
+    openings: tuple[Opening, ...] = ()
 
     def __post_init__(self) -> None:
         problems = Problems()
         for i, s in enumerate(self.stretches):
             _check_stretch(f"stretches[{i}]", s, self.kinetics, problems)
         for i, thaw in enumerate(self.thaws):
-            _check_thaw(f"thaws[{i}]", thaw, self.kinetics, problems)
+            _check_blow(f"thaws[{i}]", thaw, self.kinetics, problems)
+        for i, opening in enumerate(self.openings):
+            _check_blow(f"openings[{i}]", opening, self.kinetics, problems)
         problems.raise_if_any()
 
     @property
@@ -113,8 +127,8 @@ def dimensions(history: History) -> dict[Dimension, float]:
         spreads["energy", form] = of.energy_sd
         if any(s.opened for s in history.stretches if s.form == form):
             spreads["opened", form] = of.log_opened_factor_sd
-    for form in dict.fromkeys(thaw.form for thaw in history.thaws):
-        spreads["thaw", form] = history.kinetics[form].log_thaw_loss_sd
+    for blown, _, (_, sd) in _blows(history):
+        spreads[blown] = sd
     for i, s in enumerate(history.stretches):
         spreads["place", _place(i, s)] = s.temperature_sd
     return {dimension: sd for dimension, sd in spreads.items() if sd > 0}
@@ -141,8 +155,8 @@ def losses(
     -------
     losses
         By cause, shape (n,): ``("rate", form)`` for the storage of a form and
-        ``("thaw", form)`` for its thaws; ``("label", "")`` holds minus the logarithm of the
-        activity at receipt.
+        ``("thaw", form)`` and ``("opening", form)`` for its thaws and openings; ``("label", "")``
+        holds minus the logarithm of the activity at receipt.
     """
     zero = np.zeros(n)
     label = history.log_label + history.log_label_sd * deviates.get(LABEL, zero)
@@ -153,11 +167,10 @@ def losses(
             log_rate = _log_rate(history, i, s, deviates, zero)
             cause = ("rate", s.form)
             taken[cause] = taken.get(cause, zero) + hours * np.exp(log_rate)
-    for thaw in history.thaws:
-        if thaw.at <= until:
-            of, cause = history.kinetics[thaw.form], ("thaw", thaw.form)
-            log_loss = of.log_thaw_loss + of.log_thaw_loss_sd * deviates.get(cause, zero)
-            taken[cause] = taken.get(cause, zero) + thaw.count * np.exp(log_loss)
+    for blown, blow, (log_loss, sd) in _blows(history):
+        if blow.at <= until:
+            loss = blow.count * np.exp(log_loss + sd * deviates.get(blown, zero))
+            taken[blown] = taken.get(blown, zero) + loss
     return taken
 
 
@@ -232,16 +245,27 @@ def log_remaining_moments(history: History, until: float) -> tuple[float, float]
         expected = np.exp(log_loss + np.diag(covariance) / 2)
         mean -= float(expected.sum())
         variance += float(expected @ np.expm1(covariance) @ expected)
-    for form in dict.fromkeys(thaw.form for thaw in history.thaws):
-        of = history.kinetics[form]
-        count = sum(t.count for t in history.thaws if t.form == form and t.at <= until)
-        expected_loss = count * math.exp(of.log_thaw_loss + of.log_thaw_loss_sd**2 / 2)
+    counts: dict[tuple[Dimension, LogLoss], int] = {}
+    for cause, blow, loss in _blows(history):
+        counts[cause, loss] = counts.get((cause, loss), 0) + (blow.count if blow.at <= until else 0)
+    for (_, (log_loss_each, sd)), count in counts.items():
+        expected_loss = count * math.exp(log_loss_each + sd**2 / 2)
         mean -= expected_loss
-        variance += expected_loss**2 * math.expm1(of.log_thaw_loss_sd**2)
+        variance += expected_loss**2 * math.expm1(sd**2)
     return mean, math.sqrt(variance)
 
 
 # -- the parts ----------------------------------------------------------------------------
+
+
+def _blows(history: History) -> Iterator[tuple[Dimension, Thaw | Opening, LogLoss]]:
+    """What happened at a moment, each with its cause and the logarithm of what one takes."""
+    for thaw in history.thaws:
+        of = history.kinetics[thaw.form]
+        yield ("thaw", thaw.form), thaw, (of.log_thaw_loss, of.log_thaw_loss_sd)
+    for opening in history.openings:
+        of = history.kinetics[opening.form]
+        yield ("opening", opening.form), opening, (of.log_opening_loss, of.log_opening_loss_sd)
 
 
 def _log_rate(
@@ -284,8 +308,10 @@ def _check_stretch(place: str, s: Stretch, known: Iterable[Form], problems: Prob
         problems.add(f"{place}.form", f"there are no storage kinetics for the form {s.form!r}")
 
 
-def _check_thaw(place: str, thaw: Thaw, known: Iterable[Form], problems: Problems) -> None:
-    if not math.isfinite(thaw.at) or thaw.count < 0:
-        problems.add(place, "a thaw needs a time and a count that is not negative")
-    if thaw.form not in known:
-        problems.add(f"{place}.form", f"there are no storage kinetics for the form {thaw.form!r}")
+def _check_blow(
+    place: str, blow: Thaw | Opening, known: Iterable[Form], problems: Problems
+) -> None:
+    if not math.isfinite(blow.at) or blow.count < 0:
+        problems.add(place, "a thaw or an opening needs a time and a count that is not negative")
+    if blow.form not in known:
+        problems.add(f"{place}.form", f"there are no storage kinetics for the form {blow.form!r}")

@@ -261,7 +261,10 @@ def _with_plan(history: History, now: float, planned: Stretch | None) -> History
         past += (replace(last, start=last.start + last.hours, hours=now - last.start - last.hours),)
     ahead = planned or last
     past_only = replace(
-        history, stretches=past, thaws=tuple(t for t in history.thaws if t.at <= now)
+        history,
+        stretches=past,
+        thaws=tuple(t for t in history.thaws if t.at <= now),
+        openings=tuple(o for o in history.openings if o.at <= now),
     )
     if ahead is None:
         return past_only

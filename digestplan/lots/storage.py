@@ -39,6 +39,9 @@ class StorageKinetics:
         nothing. [1]
     log_opened_factor, log_opened_factor_sd
         Logarithm of how many times faster an opened bottle goes. [1]
+    log_opening_loss, log_opening_loss_sd
+        Logarithm of what one opening takes off ln(remaining); minus infinity where it takes
+        nothing. [1]
     """
 
     log_rate: float
@@ -51,6 +54,8 @@ class StorageKinetics:
     log_thaw_loss_sd: float = 0.0
     log_opened_factor: float = 0.0
     log_opened_factor_sd: float = 0.0
+    log_opening_loss: float = -math.inf
+    log_opening_loss_sd: float = 0.0
 
 
 @dataclass(frozen=True, slots=True)
@@ -137,7 +142,7 @@ class StorageFit:
 
     def kinetics(self, like: StorageKinetics | None = None) -> StorageKinetics:
         """
-        Storage kinetics of the lot's own; thaws and opening stay those of the library's.
+        Storage kinetics of the lot's own; thaws and openings stay those of the library's.
 
         Parameters
         ----------
@@ -172,6 +177,7 @@ def storage_kinetics(
     *,
     thaw_loss: Quantity | None = None,
     opened_factor: Quantity | None = None,
+    opening_loss: Quantity | None = None,
 ) -> StorageKinetics:
     """
     Storage kinetics from quantities as they are written or stand in the library.
@@ -188,6 +194,8 @@ def storage_kinetics(
         Fraction of the activity that one thaw takes. [1]
     opened_factor
         How many times faster an opened bottle goes. [1]
+    opening_loss
+        Fraction of the activity that one opening takes. [1]
 
     Returns
     -------
@@ -199,10 +207,8 @@ def storage_kinetics(
     energy_sd = energy.spread
     if energy.distribution == "lognormal":
         energy_sd = energy.value * math.log(energy.spread)
-    thaw, thaw_sd = -math.inf, 0.0
-    if thaw_loss is not None and thaw_loss.value > 0:
-        off_log = -math.log1p(-min(thaw_loss.value, 1 - 1e-9))
-        thaw, thaw_sd = math.log(off_log), log_moments(thaw_loss)[1]
+    thaw, thaw_sd = _log_loss(thaw_loss)
+    opening, opening_sd = _log_loss(opening_loss)
     opened, opened_sd = (0.0, 0.0) if opened_factor is None else log_moments(opened_factor)
     return StorageKinetics(
         log_rate,
@@ -214,7 +220,17 @@ def storage_kinetics(
         log_thaw_loss_sd=thaw_sd,
         log_opened_factor=opened,
         log_opened_factor_sd=opened_sd,
+        log_opening_loss=opening,
+        log_opening_loss_sd=opening_sd,
     )
+
+
+def _log_loss(lost: Quantity | None) -> tuple[float, float]:
+    """Logarithm, with its deviation, of what a lost fraction takes off ln(remaining)."""
+    if lost is None or not lost.value > 0:
+        return -math.inf, 0.0
+    off_log = -math.log1p(-min(lost.value, 1 - 1e-9))
+    return math.log(off_log), log_moments(lost)[1]
 
 
 def log_moments(quantity: Quantity) -> tuple[float, float]:
