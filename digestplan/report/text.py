@@ -3,6 +3,8 @@
 import textwrap
 from collections.abc import Callable, Iterator
 
+import numpy as np
+
 from digestplan.forecast.result import (
     DemineraliseForecast,
     DigestForecast,
@@ -117,7 +119,9 @@ def _rows(forecast: Forecast, step: StepForecast) -> Iterator[Row]:
         yield "extent at the centre", step.extent_at_centre, words.percent
     if (step.keep_loss_at_end.p95 or 0) > _WORTH_A_ROW:
         yield "keep loss at the end", step.keep_loss_at_end, words.percent
-    yield "enzyme still active", step.residual_activity_at_end, words.percent
+    held = float(np.median(step.liquid.stopped)) < 0.5
+    name = "enzyme alive, but held" if held else "enzyme still active"
+    yield name, step.residual_activity_at_end, words.percent
     if step.do == "digest":
         yield "ceiling, however long", step.ceiling, words.percent
 
