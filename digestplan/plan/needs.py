@@ -3,6 +3,7 @@
 from collections.abc import Sequence
 from dataclasses import dataclass
 
+from digestplan import library
 from digestplan.plan.model import (
     Demineralise,
     Digest,
@@ -17,6 +18,8 @@ from digestplan.plan.units import MASS
 from digestplan.plan.wording import listed, shown
 
 Steps = Sequence[Step | None]
+_MOST_ACID = 26.0  # [mol/L] pure formic acid
+_MOST_CHELATOR = 2.0  # [mol/L] more than any salt of EDTA dissolves
 
 
 @dataclass(frozen=True, slots=True)
@@ -96,9 +99,41 @@ def _check_mineral(parts: Parts) -> None:
         if getattr(parts.sample, key) is None:
             _missing_of_material(parts.written, key, "for demineralising")
     _check_known_reagent(parts)
+    _check_baths(parts)
+    _check_mineral_first(parts)
     mineral = parts.sample.mineral_fraction
     if mineral is not None and mineral.quantity.value == 0:
         parts.written.add("mineral_fraction", "there is no mineral to dissolve")
+
+
+def _check_baths(parts: Parts) -> None:
+    """Note what no bath can be: stronger than its reagent dissolves, or an acid of another pH."""
+    problems = parts.written.problems
+    for index, step in enumerate(parts.steps):
+        if not isinstance(step, Demineralise) or not step.reagent:
+            continue
+        reagent, strength = library.reagent(step.reagent), step.concentration.quantity
+        most = _MOST_CHELATOR if reagent.chelator else _MOST_ACID
+        if strength.activity is None and strength.value > most:
+            message = f"{shown(strength.text)} is more than a bath of {reagent.name} can hold"
+            problems.add(f"steps[{index}].concentration", f"{message} ({most:g} M)")
+        if step.ph is not None and not reagent.chelator:
+            message = f"this counts for a chelator; {reagent.name} has the pH of its concentration"
+            problems.add(f"steps[{index}].ph", message)
+
+
+def _check_mineral_first(parts: Parts) -> None:
+    """Note a digest before the mineral is gone that rests on a run of demineralised matrix."""
+    run = parts.sample.known_run
+    kinds = [type(step) for step in parts.steps]
+    if run is None or run.ratio.origin != "library" or Digest not in kinds:
+        return
+    if kinds.index(Digest) < kinds.index(Demineralise):
+        message = (
+            "the mineral is still there in this step; demineralise first, or say in"
+            " [sample.known_run] how it went in your lab"
+        )
+        parts.written.problems.add(f"steps[{kinds.index(Digest)}].do", message)
 
 
 def _check_known_reagent(parts: Parts) -> None:
