@@ -58,16 +58,6 @@ def inputs_of(plan: Plan) -> dict[str, Quantity]:
     return inputs | dict(uncertain_values(treatment_values(plan)))
 
 
-def normal_deviates(n_draws: int, n_inputs: int, seed: int) -> Array:
-    """Return standard normal deviates, shape (n_inputs, n_draws), evenly spread and cut."""
-    if n_inputs == 0:
-        return np.zeros((0, n_draws))
-    from scipy.special import ndtri
-
-    deviates: Array = ndtri(lattice_points(n_draws, n_inputs, seed))
-    return np.clip(deviates, -_FARTHEST, _FARTHEST)
-
-
 def incubator_key(temperature: Value) -> str:
     """Key of the error that all stretches at one nominal temperature share."""
     return f"incubator at {temperature.quantity.value - 273.15:.4g} °C"
@@ -94,17 +84,38 @@ class Draws:
     """
 
     def __init__(self, plan: Plan, n_draws: int, seed: int) -> None:
-        self.inputs: dict[str, Quantity] = dict(uncertain_values(plan))
-        self.inputs |= dict(uncertain_values(treatment_values(plan)))
+        self.inputs = inputs_of(plan)
         self.seed = seed
         self.n_draws = n_draws if self.inputs else 1
-        self._deviates = self._normal_deviates()
+        deviates = even_deviates(self.n_draws, len(self.inputs), seed) if self.inputs else ()
+        self._deviates: dict[str, Array] = dict(zip(self.inputs, deviates, strict=True))
 
-    def _normal_deviates(self) -> dict[str, Array]:
-        if not self.inputs:
-            return {}
-        z = even_deviates(self.n_draws, len(self.inputs), self.seed)
-        return dict(zip(self.inputs, z, strict=True))
+    def of_variant(self, plan: Plan) -> "Draws":
+        """
+        Return the draws of a plan that differs from this one in its steps alone.
+
+        Parameters
+        ----------
+        plan
+            The variant.
+
+        Returns
+        -------
+        draws
+            Those that the variant has by itself with this seed; made anew only where it has more
+            inputs.
+        """
+        inputs = inputs_of(plan)
+        if len(inputs) > len(self.inputs) or not inputs:
+            return Draws(plan, self.n_draws, self.seed)
+        return self.with_deviates(inputs, list(self._deviates.values()))
+
+    def with_deviates(self, inputs: dict[str, Quantity], deviates: Sequence[Array]) -> "Draws":
+        """Return draws whose inputs have these deviates, each of shape (n_draws,), in order."""
+        other = copy(self)
+        other.inputs, other.n_draws = inputs, len(deviates[0])
+        other._deviates = dict(zip(inputs, deviates, strict=False))  # noqa: SLF001
+        return other
 
     def deviate(self, key: str) -> Array | None:
         """Standard normal deviates of one input, shape (n_draws,), or None for an exact one."""

@@ -154,8 +154,9 @@ def ph_factor(enzyme: "EnzymeDraws", liquid: Liquid, temperature: Array) -> Arra
         return 1.0
     low, high = enzyme["ph_low_pka"], enzyme["ph_high_pka"]
     at_optimum = 1 + 2 * 10 ** ((low - high) / 2)
-    with np.errstate(over="ignore"):
-        factor: Array = at_optimum / (1 + 10.0 ** (low - ph) + 10.0 ** (ph - high))
+    with np.errstate(over="ignore", divide="ignore"):  # far off the optimum nothing is left
+        above_high = np.exp(np.log(10) * (ph - high))
+        factor: Array = at_optimum / (1 + 10.0 ** (low - high) / above_high + above_high)
     return factor
 
 

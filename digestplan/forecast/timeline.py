@@ -16,6 +16,7 @@ Measure = Callable[[State, Draws], Array]
 
 CURVE_POINTS = 49  # evenly spaced times of a curve, beside the corners of the programme
 _TAIL_POINTS = 24
+_FEW_TAIL_POINTS = 8
 
 
 class Timeline:
@@ -29,13 +30,19 @@ class Timeline:
         The sample's answer.
     open_ended
         Nothing follows this step: the tube stays as it is until somebody comes.
+    points
+        Evenly spaced times of its curve; 0 where only the times of levels are wanted.
     """
 
-    def __init__(self, course: Course, response: Response, *, open_ended: bool) -> None:
+    def __init__(
+        self, course: Course, response: Response, *, open_ended: bool, points: int = CURVE_POINTS
+    ) -> None:
         self.course, self.response = course, response
         self.end = course.cells.end
         edges = course.cells.edges[course.cells.edges < self.end]
-        self.hours = np.unique(np.concatenate([np.linspace(0, self.end, CURVE_POINTS), edges]))
+        evenly = np.linspace(0, self.end, points) if points else np.array([self.end])
+        self.hours = np.unique(np.concatenate([evenly, edges]))
+        self._tail_points = _TAIL_POINTS if points else _FEW_TAIL_POINTS
         self.states = [course.at(float(hour)) for hour in self.hours]
         self.open_ended = open_ended
         self._tail: tuple[Array, list[State]] | None = None
@@ -47,7 +54,7 @@ class Timeline:
     def tail(self) -> tuple[Array, list[State]]:
         """Times and states after the step's end, at its last temperature, up to for ever."""
         if self._tail is None:
-            later = np.geomspace(0.25, FOR_EVER, _TAIL_POINTS)
+            later = np.geomspace(0.25, FOR_EVER, self._tail_points)
             edges = self.course.cells.edges
             hours = np.unique(np.concatenate([self.end + later, edges[edges > self.end]]))
             hours = hours[hours <= self.end + FOR_EVER]

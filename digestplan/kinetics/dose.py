@@ -27,8 +27,12 @@ _LEAST = 1e-300
 
 
 @dataclass(frozen=True, slots=True, eq=False)
-class _Moving:
-    """Node values of a cell in which the temperature changes."""
+class Moving:
+    """Values at the nodes of a cell in which the temperature changes, each (n_nodes, n_draws).
+
+    ``active``: enzyme; ``effect``: dose an hour; ``heat``: keep loss by heat an hour, or None;
+    ``local``: dose an hour at the depth points, (n_points, n_nodes, n_draws), or None.
+    """
 
     active: Array
     effect: Array
@@ -73,7 +77,7 @@ class Course:
         self.intermediate_activity = np.broadcast_to(
             np.asarray(intermediate_activity, dtype=float), (n_draws,)
         )
-        self._moving: dict[int, _Moving] = {}
+        self._moving: dict[int, Moving] = {}
         self._live: dict[int, int] = {}
         self._passed: dict[int, tuple[tuple[Array, ...], tuple[Array, ...]]] = {}
         self.starts: list[State] = []
@@ -278,7 +282,8 @@ class Course:
         kept, passed, other = transfers
         return kept * fresh, passed * fresh + other * intermediate
 
-    def _moving_values(self, cell: int) -> _Moving:
+    def moving_values(self, cell: int) -> Moving:
+        """Values at the nodes of a cell in which the temperature changes."""
         if cell in self._moving:
             return self._moving[cell]
         start, nodes = self.starts[cell], list(self.cells.nodes[cell])
@@ -288,7 +293,7 @@ class Course:
         weight = self._coverage(start, ALL) * self.rates.activity[nodes]
         local = self._local_rates(cell, transfers, weight, active)
         heat = None if self.rates.heat is None else self.rates.heat[nodes]
-        self._moving[cell] = _Moving(active, weight * active, heat, local)
+        self._moving[cell] = Moving(active, weight * active, heat, local)
         return self._moving[cell]
 
     def _clock(self, cell: int) -> tuple[Array, Array]:
@@ -320,7 +325,7 @@ class Course:
 
     def _end_of_moving(self, cell: int) -> State:
         start, hours = self.starts[cell], self._length(cell)
-        values = self._moving_values(cell)
+        values = self.moving_values(cell)
         _, at_end = self._transfers(cell)
         fresh, intermediate = self._carry(at_end, start.fresh, start.intermediate)
         heat = start.heat
@@ -348,7 +353,7 @@ class Course:
 
     def _inside_moving(self, cell: int, elapsed: Array | float, draws: Draws) -> State:
         start, hours = self.starts[cell].of(draws), self._length(cell)
-        values = self._moving_values(cell)
+        values = self.moving_values(cell)
         share = np.broadcast_to(np.asarray(elapsed, dtype=float) / hours, start.fresh.shape)
         weights, here = hours * partial_weights(share), node_interpolation(share)
         heat = start.heat

@@ -21,6 +21,8 @@ _WIDEST = 8.0  # [K] the most by which the temperature changes within one cell
 _GROWTH = 2.5  # by which graded cells grow
 _GRADES = 12  # how many of them follow fresh enzyme
 _FEW_GRADES = 3  # and a change of temperature alone
+# Time constants of a lag that one cell holds while more than so many K of it are left.
+_SETTLING_SPANS = ((0.3, 2.5), (0.005, 4.0), (0.0, 8.0))
 _SETTLED = 1e-6  # [K] a lag that is nearer than this to its bath has arrived
 
 
@@ -58,6 +60,28 @@ def partial_weights(share: Array) -> Array:
     """
     weights: Array = _ANTIDERIVATIVE.T @ _powers(share)
     return weights
+
+
+def running_integral(node_values: Array) -> Array:
+    """
+    Return the integral over the first part of a cell as a polynomial of that part [1]_.
+
+    Parameters
+    ----------
+    node_values : ndarray, shape (n_nodes, n_draws)
+        Values at the nodes of a cell of unit length. [any]
+
+    Returns
+    -------
+    coefficients : ndarray, shape (n_nodes, n_draws)
+        Coefficients of the first to the eighth power of the share of the cell. [any]
+
+    References
+    ----------
+    .. [1] P. J. Davis and P. Rabinowitz, Methods of Numerical Integration, 1984 (from memory).
+    """
+    coefficients: Array = np.asarray(_ANTIDERIVATIVE @ node_values)
+    return coefficients
 
 
 def _powers(share: Array) -> Array:
@@ -334,6 +358,7 @@ def _settling_shares(swing: float) -> list[tuple[float, float]]:
     shares = [1.0]
     while shares[-1] * swing > _WIDEST:
         shares.append(max(shares[-1] - _WIDEST / swing, shares[-1] * np.exp(-1.5)))
-    while shares[-1] * swing > _SETTLED:
-        shares.append(max(shares[-1] * np.exp(-2.5), 0.99 * _SETTLED / swing))
+    while shares[-1] * swing > _SETTLED:  # the less there is left, the longer a cell may be
+        span = next(span for least, span in _SETTLING_SPANS if shares[-1] * swing > least)
+        shares.append(max(shares[-1] * np.exp(-span), 0.99 * _SETTLED / swing))
     return list(itertools.pairwise(shares))

@@ -53,11 +53,11 @@ def pk_at(temperature: Values, pk: Values, enthalpy: Values, heat_capacity: Valu
     .. [1] R. N. Goldberg, N. Kishore and R. M. Lennen, J. Phys. Chem. Ref. Data 31, 231, 2002
        (as quoted elsewhere).
     """
-    t = np.asarray(temperature, dtype=float)
-    ratio = STANDARD / t
-    by_enthalpy = np.asarray(enthalpy, dtype=float) * (1 / t - 1 / STANDARD)
-    by_capacity = np.asarray(heat_capacity, dtype=float) * (ratio - 1 - np.log(ratio))
-    moved: Array = pk + (by_enthalpy - by_capacity) / (GAS_CONSTANT * np.log(10))
+    over = STANDARD / np.asarray(temperature, dtype=float) - 1
+    scale = 1 / (GAS_CONSTANT * np.log(10))
+    by_enthalpy = np.asarray(enthalpy, dtype=float) * scale / STANDARD
+    by_capacity = np.asarray(heat_capacity, dtype=float) * scale
+    moved: Array = pk + (by_enthalpy - by_capacity) * over + by_capacity * np.log1p(over)
     return moved
 
 
