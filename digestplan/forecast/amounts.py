@@ -4,7 +4,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from digestplan.forecast.draws import Draws
+from digestplan.plan.lot import asks_label
 from digestplan.plan.model import Digest, Plan, Value
+from digestplan.problems import InputError, Problem
 
 Array = NDArray[np.float64]
 
@@ -87,6 +89,9 @@ def weighed_ratio(plan: Plan, draws: Draws, charge: Value, volume: Array | None)
     """
     amount = draws.of(charge)
     if charge.quantity.activity is None:
+        if asks_label(plan):
+            message = "this is missing, and nobody asked the register what is on the lot's label"
+            raise InputError(Problem("lot.label_activity", message, plan.path))
         amount = amount * label_activity(plan, draws)
     else:
         amount = amount * conversion(plan, charge.quantity.activity)

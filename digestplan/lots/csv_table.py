@@ -73,7 +73,7 @@ def read_table(path: str | Path, columns: Sequence[Column]) -> "pd.DataFrame":
     """
     file = str(path)
     problems = Problems()
-    header, rows, lines = _rows(_text(path, file), problems)
+    header, rows, lines = _rows(text_of(path), problems)
     places = _places(header, columns, problems)
     _raise(problems, file)
     import pandas as pd
@@ -94,8 +94,9 @@ def read_table(path: str | Path, columns: Sequence[Column]) -> "pd.DataFrame":
     return pd.DataFrame(read)
 
 
-def _text(path: str | Path, file: str) -> str:
+def text_of(path: str | Path) -> str:
     """Turn a file's bytes into text, or say what it is instead."""
+    file = str(path)
     try:
         with Path(path).open("rb") as stream:
             raw = stream.read(_MOST_BYTES + 1)

@@ -1,7 +1,8 @@
 """The lot of a plan: label activity, what is left of it, and its certificate's factors."""
 
-from digestplan.plan.model import Lot
+from digestplan.plan.model import Lot, Plan
 from digestplan.plan.section import Section
+from digestplan.plan.units import MASS
 from digestplan.plan.wording import plain, shown
 from digestplan.quantities import QuantityError, parse_conversion
 
@@ -16,6 +17,18 @@ def checked_lot(section: Section) -> Lot:
         remaining=section.needed("remaining"),
         conversions=_conversions(section),
     )
+
+
+def asks_register(plan: Plan) -> bool:
+    """Whether a plan names a lot and leaves to the register what is on its label or left of it."""
+    if plan.lot.id is None:
+        return False
+    return plan.lot.remaining.origin == "default" or asks_label(plan)
+
+
+def asks_label(plan: Plan) -> bool:
+    """Whether a plan counts in activity units and does not say what is on the label."""
+    return plan.lot.label_activity is None and plan.activity_unit != MASS
 
 
 def _conversions(section: Section) -> dict[tuple[str, str], float]:
