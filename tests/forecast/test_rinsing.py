@@ -26,7 +26,7 @@ def treated(case, exchanges):
     """The forecast, and the cautions, of a case with so many exchanges."""
     demineralise, _, enzyme, then, thickness, _, each = case
     text = plan(demineralise, rinse(exchanges, each), then, thickness=thickness, enzyme=enzyme)
-    return forecast_of(text), codes(text)
+    return forecast_of(text, 500), codes(text)
 
 
 def clean(case):

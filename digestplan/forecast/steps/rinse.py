@@ -1,7 +1,8 @@
 """Rinse: exchange by exchange, what a fluid carries out of the piece."""
 
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from dataclasses import replace
+from functools import partial
 
 import numpy as np
 from numpy.typing import NDArray
@@ -18,6 +19,7 @@ from digestplan.plan.model import Digest, Environment, Rinse
 Array = NDArray[np.float64]
 
 _MOST = 60  # more exchanges than anybody would do
+_DRAWS_OF_GUESS, _MARGIN = 128, 4  # a first look at how many exchanges, and what it may miss
 CHELATORS = ("edta", "citric-acid")
 _FALLBACK = 1e-3  # [mol/L] that a liquid of which nothing is stated bears
 _SHARE_OF_CALCIUM = 0.2  # of the calcium that a chelator may take
@@ -79,13 +81,19 @@ def run(
 
 
 def _left_after_each(
-    step: Rinse, job: Job, substance: str, temperature: Array, ratio: Array, exchanges: int
+    step: Rinse,
+    job: Job,
+    substance: str,
+    temperature: Array,
+    ratio: Array,
+    exchanges: int,
+    some: slice = slice(None),
 ) -> Array:
-    """Share that is left before the first and after each of so many exchanges."""
-    pace = solute_clock(job.plan, job.draws, substance, temperature)
+    """Share that is left before the first and after each of so many exchanges, in some draws."""
+    pace, ratio = solute_clock(job.plan, job.draws, substance, temperature), ratio[some]
     if pace is None:
         return left_at_equilibrium(ratio, np.arange(exchanges + 1.0)[:, np.newaxis])
-    thetas = np.broadcast_to(pace * step.each, (exchanges, job.draws.n_draws))
+    thetas = np.broadcast_to(pace[some] * step.each, (exchanges, len(ratio)))
     return rinse(thetas, ratio, job.plan.sample.shape).left
 
 
@@ -108,14 +116,40 @@ def _more(
         bears = bearable(name, digest, job)
         if bears is None or _surely(amount <= bears, job):
             continue
-        most = step.exchanges
-        enough = np.zeros(0, dtype=bool)
-        while not enough.any() and most < step.exchanges + _MOST:
-            most = min(2 * most, step.exchanges + _MOST)
-            left = _left_after_each(step, job, name, temperature, ratio, most)
-            enough = _surely(carried.residues[name] * left <= bears, job)
-        wanted[name] = int(enough.argmax()) - step.exchanges if enough.any() else None
+        before = carried.residues[name]
+        enough = partial(_enough, step, job, name, before, bears, temperature, ratio)
+        wanted[name] = _first_enough(step, job, enough)
     return wanted
+
+
+def _enough(
+    step: Rinse,
+    job: Job,
+    substance: str,
+    before: Array,
+    bears: float,
+    temperature: Array,
+    ratio: Array,
+    exchanges: int,
+    some: slice,
+) -> NDArray[np.bool_]:
+    """Whether no exchange, one, two … are enough for what a digest bears."""
+    left = _left_after_each(step, job, substance, temperature, ratio, exchanges, some)
+    return _surely(before[some] * left <= bears, job)
+
+
+def _first_enough(
+    step: Rinse, job: Job, enough: Callable[[int, slice], NDArray[np.bool_]]
+) -> int | None:
+    """How many more exchanges are the first to be enough; some draws say how far to look."""
+    limit = step.exchanges + _MOST
+    guess = enough(limit, slice(min(_DRAWS_OF_GUESS, job.draws.n_draws)))
+    near = int(guess.argmax()) + _MARGIN if guess.any() else limit
+    for most in dict.fromkeys((min(near, limit), limit)):
+        found = enough(most, slice(None))
+        if found.any():
+            return int(found.argmax()) - step.exchanges
+    return None
 
 
 def _surely(met: NDArray[np.bool_], job: Job) -> NDArray[np.bool_]:
