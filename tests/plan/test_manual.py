@@ -4,10 +4,10 @@ import re
 import tomllib
 
 import pytest
-from make_manual import MANUAL, rewritten
 
 from digestplan.plan.fields import SECTIONS
 from digestplan.plan.read import parse_plan
+from tests.plan.make_manual import MANUAL, rewritten
 
 TEXT = MANUAL.read_text(encoding="utf-8")
 
