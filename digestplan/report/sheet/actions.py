@@ -13,7 +13,7 @@ from digestplan.report.sheet.amounts import agent_name, amounts, enzyme_name
 from digestplan.report.sheet.model import Action, Amount, Doing
 from digestplan.report.sheet.portions import CarriedOut
 from digestplan.report.sheet.rounding import volume_text
-from digestplan.report.sheet.seen import chances_seen, digest_seen, mineral_seen
+from digestplan.report.sheet.seen import chances_seen, mineral_seen, seen_at
 from digestplan.report.sheet.typed import celsius, short, value_text
 
 LEAD = 0.5  # [h] common practice: to weigh, make up and bring a bath to its temperature
@@ -138,7 +138,7 @@ def _digest(
     for place, (addition, amount) in enumerate(zip(step.additions, added, strict=True)):
         at = start + addition.after
         text = f"Add enzyme: {amount.amount} ({enzyme_name(forecast.plan)}), weighed fresh; mix."
-        yield _action(index, f"addition-{place + 1}", "add", at, text, digest_seen(forecast, at))
+        yield _action(index, f"addition-{place + 1}", "add", at, text, seen_at(forecast, at))
 
 
 def _setting(step: Digest) -> str:
@@ -252,7 +252,7 @@ def _visits(forecast: Forecast) -> Iterator[Action]:
     for place, chance in enumerate(forecast.visits):
         assert start is not None
         hours = (chance.visit.start - start) / timedelta(hours=1)
-        see = f"{digest_seen(forecast, hours)} {chances_seen(forecast, hours)}"
+        see = f"{seen_at(forecast, hours)} {chances_seen(forecast, hours)}"
         text = f"Come to the bench (until {_until(chance)}) and look. {_chances(forecast, chance)}"
         action = _action(None, f"visit-{place + 1}", "visit", hours, text, see)
         yield replace(action, until=chance.visit.end)

@@ -2,6 +2,7 @@
 
 from collections.abc import Iterator
 from html import escape
+from math import sqrt
 
 from digestplan.report.sheet.chart import drawing, one_temperature, window_words
 from digestplan.report.sheet.drawing import svg
@@ -114,7 +115,7 @@ def _printed(sheet: Sheet) -> float:
     )
     fill = rows * _ROW + cautions + actions + 0.6 * small
     low, high = _PRINTED
-    return min(max(10.0 * (_FILLS_TWO_PAGES / fill) ** 0.5, low), high)
+    return min(max(10.0 * sqrt(_FILLS_TWO_PAGES / fill), low), high)
 
 
 def _safe(text: str) -> str:

@@ -21,7 +21,7 @@ from digestplan.report.sheet.model import (
 )
 
 _ACTS = re.compile(r"[\\`*_{}\[\]<>#|~&$!@^]|:(?=[A-Za-z/])|(?<=www)\.")
-_AT_THE_START = re.compile(r"^([+=-]|\d+(?=[.)]))")
+_AT_THE_START = re.compile(r"^(\d*)([+=-]|(?<=\d)[.)])")
 _ROWS_OF_CHART = 9
 _BLANK = r"\_"
 
@@ -55,11 +55,7 @@ def safe(text: str) -> str:
     blanks = len(text) - len(text.lstrip(" "))
     flat = "\u00a0" * blanks + " ".join(text[blanks:].split("\n"))
     flat = _ACTS.sub(lambda match: "\\" + match[0], flat)
-    return _AT_THE_START.sub(_at_the_start, flat)
-
-
-def _at_the_start(match: re.Match[str]) -> str:
-    return match[0] if match[0].isdigit() else "\\" + match[0]
+    return _AT_THE_START.sub(r"\1\\\2", flat)
 
 
 def _block(block: Block) -> Iterator[str]:

@@ -54,7 +54,16 @@ _PAPERS = {"a4": pagesizes.A4, "letter": pagesizes.LETTER}
 _MARGIN, _FOOT, _FRAME = 32.0, 36.0, 6.0  # [1/72 inch]; reportlab's frame pads by the last
 _ROOM_UNDER_A_HEADING = 50.0  # below which a section starts on the next page
 _WANTED_PAGES = 2
-_SCALES = (0.8, 0.86, 0.93, 1.0, 1.08, 1.16, 1.25)  # of the type: the largest that fits is taken
+_SCALES = (
+    0.74,
+    0.8,
+    0.86,
+    0.93,
+    1.0,
+    1.08,
+    1.16,
+    1.25,
+)  # of the type: the largest that fits is taken
 _FONT, _BOLD = "DejaVuSans", "DejaVuSans-Bold"
 _MISSING = "□"
 _ON_MISSING = (
@@ -251,14 +260,19 @@ class _Writer:
         label = "small label" if facts.small else "label"
         rows = [[self.text(k, label), self.text(v, kind)] for k, v in facts.rows]
         first = (82.0 if facts.small else 46.0) * self.scale
-        look = [*_TIGHT, ("VALIGN", (0, 0), (-1, -1), "TOP")]
+        look = [*_padding(0, 3, 0.5, 1), ("VALIGN", (0, 0), (-1, -1), "TOP")]
         return PaperTable(rows, [first, self.width - first], style=look, splitInRow=1)
 
     def _table(self, table: Table) -> Flowable:
         total = sum(column.weight for column in table.columns)
         widths = [self.width * column.weight / total for column in table.columns]
         rows: list[list[Any]] = [[self.text(c.title, "column") for c in table.columns]]
-        look: list[Any] = [*_GRID, ("LINEBELOW", (0, 0), (-1, 0), 1, black)]
+        look: list[Any] = [
+            *_padding(3, 3, self.scale, 2.4 * self.scale),
+            ("VALIGN", (0, 0), (-1, -1), "MIDDLE"),
+            ("LINEBELOW", (0, 0), (-1, -1), 0.4, _RULE),
+            ("LINEBELOW", (0, 0), (-1, 0), 1, black),
+        ]
         for place, row in enumerate(table.rows, 1):
             rows.append(self._row(table.columns, row))
             if len(row.cells) == 1:
@@ -294,10 +308,9 @@ class _Writer:
             ("BOX", (0, 0), (-1, -1), thick, black),
             ("BACKGROUND", (0, 0), (0, -1), black if stop else white),
             ("VALIGN", (0, 0), (-1, -1), "TOP"),
-            ("TOPPADDING", (0, 0), (-1, -1), 1),
-            ("BOTTOMPADDING", (0, 0), (-1, -1), 2.5),
+            *_padding(6, 5, 0.5, 2.2),
         ]
-        first = 44 * self.scale
+        first = 52 * self.scale
         return PaperTable(
             [[badge, words]], [first, self.width - first], style=look, spaceAfter=2, splitInRow=1
         )
@@ -307,7 +320,7 @@ class _Writer:
         gap = 14.0
         width = (self.width - gap * (count - 1)) / count
         row: list[Any] = []
-        look: list[Any] = [*_TIGHT]
+        look = _padding(0, 3, 1, 1)
         widths = []
         for place, label in enumerate(blanks.labels):
             if place:
@@ -319,20 +332,9 @@ class _Writer:
         return KeepTogether([Spacer(1, 22), PaperTable([row], widths, style=look)])
 
 
-_TIGHT = [
-    ("LEFTPADDING", (0, 0), (-1, -1), 0),
-    ("RIGHTPADDING", (0, 0), (-1, -1), 3),
-    ("TOPPADDING", (0, 0), (-1, -1), 1),
-    ("BOTTOMPADDING", (0, 0), (-1, -1), 1),
-]
-_GRID = [
-    ("VALIGN", (0, 0), (-1, -1), "MIDDLE"),
-    ("LINEBELOW", (0, 0), (-1, -1), 0.4, _RULE),
-    ("LEFTPADDING", (0, 0), (-1, -1), 3),
-    ("RIGHTPADDING", (0, 0), (-1, -1), 3),
-    ("TOPPADDING", (0, 0), (-1, -1), 1),
-    ("BOTTOMPADDING", (0, 0), (-1, -1), 2.5),
-]
+def _padding(left: float, right: float, top: float, bottom: float) -> list[Any]:
+    sides = (("LEFT", left), ("RIGHT", right), ("TOP", top), ("BOTTOM", bottom))
+    return [(f"{side}PADDING", (0, 0), (-1, -1), size) for side, size in sides]
 
 
 @cache

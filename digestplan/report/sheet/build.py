@@ -162,8 +162,8 @@ def _amounts_table(to_weigh: tuple[Amount, ...]) -> Table:
         Column("Step", 6, "small"),
         Column("What", 20),
         Column("Amount", 16, "strong"),
-        Column("How", 42, "small"),
-        Column("Found", 12, "blank"),
+        Column("How", 44, "small"),
+        Column("Found", 10, "blank"),
     )
     rows = [
         Row(("", _step_name(a.step), _first_upper(a.what), a.amount, a.how, a.found))
@@ -198,10 +198,10 @@ def _clock_blocks(plan: Plan, to_do: tuple[Action, ...]) -> tuple[Block, ...]:
 def _clock_table(start: datetime | None, to_do: tuple[Action, ...]) -> Table:
     columns = (
         Column("", 4, "tick"),
-        Column("When", 11, "strong"),
+        Column("When", 13, "strong"),
         Column("Step", 6, "small"),
-        Column("Do", 42),
-        Column("What should be seen", 26, "small"),
+        Column("Do", 41),
+        Column("What should be seen", 25, "small"),
         Column("Done, initials", 11, "blank"),
     )
     rows, day = [], ""

@@ -24,7 +24,7 @@ _CLOCK, _STRIPPED = 28.0, 34.0  # below the chart: its times, and a strip of tem
 _WINDOWED, _BARE = 24.0, 8.0  # above it: the bracket of a window, or nothing
 _STRIP = 16.0  # height of the strip of temperatures, below the axis of time
 _HATCH, _STEP = 5.0, 1.0  # distance of the hatching, and how finely it is cut
-_TICKS_H = (1, 2, 3, 4, 6, 8, 12, 24, 48, 96, 168, 336, 672, 1344, 2688, 5376)
+_TICKS_H = (0.05, 0.1, 0.25, 0.5, 1, 2, 3, 4, 6, 8, 12, 24, 48, 96, 168, 336, 672, 1344, 2688, 5376)
 _MOST_TICKS = 9
 _NARROW = 34.0  # points under which a plateau carries no temperature
 _CHARACTER = 0.55  # width of a character over its size
@@ -113,7 +113,7 @@ def _ticks(chart: Chart, frame: _Frame) -> list[tuple[float, str, str]]:
     if chart.start is None:
         first = int(np.ceil(frame.first / step - 1e-9))
         count = int(frame.last / step + 1e-9)
-        return [(n * step, f"{n * step} h", "") for n in range(first, count + 1)]
+        return [(n * step, f"{n * step:g} h", "") for n in range(first, count + 1)]
     begin = chart.start + timedelta(hours=frame.first)
     midnight = begin.replace(hour=0, minute=0, second=0, microsecond=0)
     found, day = [], ""

@@ -1,12 +1,13 @@
 """Amounts as a balance and a pipette can give them, and a stock where a balance cannot."""
 
 from dataclasses import dataclass
+from itertools import product
 from math import floor, log10
 
 SMALLEST_WEIGHED = 1e-3  # [g] common practice: less than 1 mg is taken from a stock
 
 _STOCKS = (10.0, 5.0, 2.0, 1.0, 0.5, 0.2, 0.1)  # [mg/mL]
-_DILUTIONS = (10, 100, 1000, 10_000)
+_DILUTIONS = (1, 10, 100, 1000, 10_000, 100_000)  # the less the better
 _WORTH_PIPETTING = (0.05, 0.02, 0.01)  # [mL] the more the better
 _SHARE_OF_BATH = 0.1  # that a stock may take up
 _NO_BATH = 0.3  # [mL] that may be pipetted where the bath is not known
@@ -89,12 +90,10 @@ def stock_for(mass: float, bath: float | None) -> Stock:
         The strongest that leaves a volume worth pipetting and at most a tenth of the bath.
     """
     most = _NO_BATH if bath is None else _SHARE_OF_BATH * bath
-    for least in _WORTH_PIPETTING:
-        for dilution in (1, *_DILUTIONS):
-            for milligrams in _STOCKS if dilution == 1 else _STOCKS[:1]:
-                pipetted = mass * dilution / (milligrams / 1000)
-                if least <= pipetted <= most:
-                    return _stock(milligrams, dilution, pipetted)
+    for dilution, least, milligrams in product(_DILUTIONS, _WORTH_PIPETTING, _STOCKS):
+        pipetted = mass * dilution / (milligrams / 1000)
+        if least <= pipetted <= most:
+            return _stock(milligrams, dilution, pipetted)
     milligrams = next((c for c in _STOCKS if mass / c * 1000 >= _WORTH_PIPETTING[-1]), _STOCKS[-1])
     return _stock(milligrams, 1, mass / milligrams * 1000)
 

@@ -55,13 +55,16 @@ def extent_at(step: StepForecast, hours: float) -> tuple[float, float, float] | 
     return None
 
 
-def digest_seen(forecast: Forecast, hours: float) -> str:
-    """Return what should be seen of a digestion at a moment, hours from the plan's start [h]."""
-    for step in forecast.steps:
-        extent = extent_at(step, hours)
-        if extent is not None and isinstance(step, DigestForecast):
-            look = next(text for most, text in _DIGESTING if extent[1] < most)
-            return f"{look} {_numbers('extent', extent)} {_LOOK_ONLY}"
+def seen_at(forecast: Forecast, hours: float) -> str:
+    """Return what should be seen of the piece at a moment, hours from the plan's start [h]."""
+    for told, step in zip(forecast.steps, forecast.plan.steps, strict=True):
+        extent = extent_at(told, hours)
+        if extent is None:
+            continue
+        if isinstance(step, Demineralise):
+            return mineral_seen(step, told, hours)
+        look = next(text for most, text in _DIGESTING if extent[1] < most)
+        return f"{look} {_numbers('extent', extent)} {_LOOK_ONLY}"
     return _LOOK_ONLY
 
 
