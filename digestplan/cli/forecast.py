@@ -3,14 +3,14 @@
 import argparse
 
 from digestplan.cli import output
+from digestplan.cli.plans import plan_of
 
 
 def run(chosen: argparse.Namespace) -> None:
     """Forecast one plan and write its report, or its JSON document."""
     from digestplan.forecast.run import forecast
-    from digestplan.plan.read import read_plan
 
-    result = forecast(read_plan(chosen.plan), chosen.draws, chosen.seed)
+    result = forecast(plan_of(chosen), chosen.draws, chosen.seed)
     if chosen.json:
         from digestplan.report.as_json import dumps, forecast_document
 

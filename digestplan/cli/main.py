@@ -8,6 +8,7 @@ from importlib import import_module
 
 from digestplan import __version__
 from digestplan.cli import diagnostics, output
+from digestplan.cli.lot_grammar import add_assay, add_lot
 
 _MOST_DRAWS = 1_000_000
 
@@ -27,12 +28,29 @@ def main(arguments: Sequence[str] | None = None) -> int:
         0 done; 1 the input is wrong; 2 the command line is wrong; 3 the program failed.
     """
     output.prepare()
-    chosen = parser().parse_args(arguments)
+    chosen = parser().parse_args(_joined(sys.argv[1:] if arguments is None else arguments))
     if chosen.module is None:
         parser().print_help(sys.stderr)
         return diagnostics.WRONG_COMMAND
     command = getattr(import_module(f"digestplan.cli.{chosen.module}"), chosen.function)
     return diagnostics.run(partial(command, chosen))
+
+
+def _joined(arguments: Sequence[str]) -> list[str]:
+    """Join an option with a value that begins with a minus, such as ``--temperature -20C``."""
+    joined: list[str] = []
+    for word in arguments:
+        option = joined[-1] if joined else ""
+        if (
+            option.startswith("--")
+            and "=" not in option
+            and word[:1] == "-"
+            and word[1:2].isdigit()
+        ):
+            joined[-1] = f"{option}={word}"
+        else:
+            joined.append(word)
+    return joined
 
 
 def parser() -> argparse.ArgumentParser:
@@ -48,7 +66,12 @@ def parser() -> argparse.ArgumentParser:
     commands = top.add_subparsers(title="commands", metavar="COMMAND")
     shared = shared_options()
     _add(commands, shared, "forecast", "forecast", "one plan's forecast, as a short report", "plan")
+    does = "the bench sheet (.pdf, .html or .md), or the times as a calendar (.ics)"
+    sheet = _add(commands, shared, "sheet", "sheet", does, "plan")
+    sheet.add_argument("-o", "--output", metavar="FILE", help="where it goes; its ending says how")
     _add(commands, shared, "library", "library", "what the library knows, with its sources", "key")
+    add_lot(commands, shared)
+    add_assay(commands, shared)
     return top
 
 

@@ -177,7 +177,7 @@ def _remarks(record: "LotRecord", posterior: LotPosterior) -> list[str]:
     if posterior.contradicted:
         remarks.append(contradiction(record, posterior))
     if posterior.below_freezing and posterior.from_assays is None:
-        remarks.append(below_freezing())
+        remarks.append(below_freezing(posterior))
     if record.summary.discarded_at is not None:
         day = record.summary.discarded_at.date().isoformat()
         remarks.append(f"By the register lot {record.received.lot} was discarded on {day}.")

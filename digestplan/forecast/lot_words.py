@@ -32,11 +32,12 @@ def contradiction(record: "LotRecord", posterior: LotPosterior) -> str:
     )
 
 
-def below_freezing() -> str:
+def below_freezing(posterior: LotPosterior) -> str:
     """Return the caution on storage below 0 °C."""
+    more = "An assay would say more." if posterior.from_assays is None else "Trust the assay more."
     return (
         "It was kept below 0 °C, where an Arrhenius line bends: what its history says of that "
-        "time is uncertain beyond the spread that is told. An assay would say more."
+        f"time is uncertain beyond the spread that is told. {more}"
     )
 
 

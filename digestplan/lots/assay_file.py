@@ -1,7 +1,7 @@
 """From a file of readings and its setup to an activity: traces, or end-points."""
 
 import re
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from pathlib import Path
 
@@ -111,19 +111,26 @@ def _of_traces(path: str | Path, setup: WrittenSetup) -> AssayOutcome:
             message = f"{setup.unit} is counted by end-points against standards, not by a trace"
             raise InputError(Problem("assay", message))
         rates = tuple(TraceRate(t, _rate(t)) for t in traces)
-        notes = [note for r in rates for note in r.rate.notes]
-        notes.append("no assay or unit is named: these are rates of absorbance, not activities")
-        return AssayOutcome(setup, rates, notes=tuple(dict.fromkeys(notes)))
+        note = "no assay or unit is named: these are rates of absorbance, not activities"
+        return AssayOutcome(setup, rates, notes=(*_of_each(rates), note))
     found = activity(traces, setup.absorbance())
     kept = {"sample": iter(found.samples), "blank": iter(found.blanks)}
+    rates = tuple(TraceRate(t, next(kept[t.series])) for t in traces)
+    said = {note for r in rates for note in r.rate.notes}
+    others = [note for note in found.notes if note not in said]
     return AssayOutcome(
         setup,
-        tuple(TraceRate(t, next(kept[t.series])) for t in traces),
+        rates,
         per_volume=found.per_volume,
         per_mass=found.per_mass,
         fraction=found.fraction,
-        notes=(*found.notes, *_notes(setup)),
+        notes=(*_of_each(rates), *others, *_notes(setup)),
     )
+
+
+def _of_each(rates: Sequence[TraceRate]) -> list[str]:
+    """What is to be known of each trace, with its name."""
+    return [f"{r.trace.series} {r.trace.replicate}: {note}" for r in rates for note in r.rate.notes]
 
 
 def _rate(trace: Trace) -> InitialRate:

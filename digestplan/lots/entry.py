@@ -61,8 +61,8 @@ def entry(kind: str, lot: str, at: datetime, written: Mapping[str, Any]) -> Even
     at
         When it happened (local wall clock).
     written
-        Texts by field, such as ``temperature = "-20 ± 2 degC"``; a field that is None or empty
-        counts as not written.
+        Texts by field, such as ``temperature = "-20 ± 2 degC"``, or numbers as the event keeps
+        them; a field that is None or empty counts as not written.
 
     Returns
     -------
@@ -75,12 +75,12 @@ def entry(kind: str, lot: str, at: datetime, written: Mapping[str, Any]) -> Even
     if at > now() + _AHEAD:
         problems.add("at", f"{at:%Y-%m-%d} is still to come: only what has happened is recorded")
     for name, value in told.items():
-        if name in QUANTITIES:
+        if name in QUANTITIES and isinstance(value, str):
             _add_quantity(fields, name, value, problems)
         else:
             read = _READERS.get(name)
             fields[name] = value if read is None else read(value, problems)
-    for name in _needed(kind) - told.keys():
+    for name in sorted(_needed(kind) - told.keys()):
         example = _EXAMPLES.get(name)
         problems.add(name, f"this is missing, such as {example}" if example else "this is missing")
     problems.raise_if_any()

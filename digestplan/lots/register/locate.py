@@ -120,7 +120,7 @@ def look_at(file: Path, *, create: bool) -> None:
             if not file.parent.is_dir():
                 raise refusal(name, "its folder does not exist; make the folder, or mend the path")
             if not create:
-                raise refusal(name, "there is no lot register here")
+                raise refusal(name, NONE_HERE)
             return
         if not file.is_file():
             raise refusal(name, "this is not a file that a register could be kept in")
@@ -141,6 +141,8 @@ def make_home(file: Path) -> None:
 
 
 # -- a database's errors in words -------------------------------------------------------------
+
+NONE_HERE = "there is no lot register here; enter or import a lot, and there will be one"
 
 _SQLITE = {
     3: "you have no permission to use it",

@@ -13,7 +13,7 @@ from sqlalchemy import Connection, Engine, func, insert, inspect, select
 from digestplan import __version__
 from digestplan.lots.register import tables
 from digestplan.lots.register.engine import append_to, leave_write_ahead_log
-from digestplan.lots.register.locate import refusal
+from digestplan.lots.register.locate import NONE_HERE, refusal
 
 APPLICATION_ID = int.from_bytes(b"dgpl")  # in the header of an SQLite file
 
@@ -132,7 +132,7 @@ def bring_up_to_date(engine: Engine, name: str, *, create: bool) -> None:
     with engine.connect() as connection:
         version = version_found(connection, name, migrations[-1].number)
     if version == 0 and not create:
-        raise refusal(name, "there is no lot register here")
+        raise refusal(name, NONE_HERE)
     if version < migrations[-1].number:
         append_to(engine, lambda connection: migrate(connection, name, migrations))
     if engine.dialect.name == "sqlite":
