@@ -121,7 +121,7 @@ def _opened(record: "LotRecord") -> list[datetime]:
 
 def _form_at(stretches: "Sequence[StorageStretch]", at: datetime) -> Form:
     """Form of the enzyme when the bottle was opened, before anything else was done with it."""
-    before = [s.form for s in stretches if s.start <= at]
+    before = [s.form for s in stretches if s.start < at]
     return before[-1] if before else stretches[0].form
 
 
