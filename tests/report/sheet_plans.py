@@ -189,6 +189,12 @@ def pdf_pages(document):
     return [page.extract_text() for page in PdfReader(BytesIO(document)).pages]
 
 
+def pdf_text(document):
+    """The text of a PDF without a break from page to page: what stands at their feet comes last."""
+    pages = [page.rsplit("page ", 1) for page in pdf_pages(document)]
+    return "".join(body for body, _ in pages) + "".join(foot for _, foot in pages)
+
+
 def squeezed(text):
     """A text without blanks, so that the ends of lines do not matter."""
     return re.sub(r"[\s\u00a0\u2068\u2069]+", "", text)

@@ -104,7 +104,7 @@ def test_times_outside_the_visits_are_marked():
         if isinstance(block, Table)
     ]
     marked = [row.cells[1] for row in table.rows if len(row.cells) > 1 and "•" in row.cells[1]]
-    assert marked == ["20:30\u00a0•"]
+    assert marked == ["Thu 20:30\u00a0•"]
 
 
 def test_a_plan_without_a_clock_counts_from_its_start():

@@ -1,9 +1,9 @@
 """The three forms of a sheet hold the same facts, and nothing in them acts."""
 
 import os
-import re
 import subprocess
 import sys
+from dataclasses import replace
 from pathlib import Path
 
 import pytest
@@ -17,6 +17,8 @@ from digestplan.report.sheet.build import bench_sheet
 from tests.report.sheet_plans import (
     parsed_html,
     pdf_pages,
+    pdf_text,
+    plan_of,
     rendered,
     sayings,
     sheet_of,
@@ -37,7 +39,7 @@ SHEETS = {
 FORMS = {
     "html": lambda sheet: parsed_html(html(sheet))[0],
     "markdown": lambda sheet: parsed_html(rendered(markdown(sheet)))[0],
-    "pdf": lambda sheet: "".join(pdf_pages(pdf(sheet))),
+    "pdf": lambda sheet: pdf_text(pdf(sheet)),
 }
 HOSTILE = [
     "<script>alert(1)</script><img src=x onerror=alert(2)> & \"quoted\" 'so' &lt;b&gt; &#x41;",
@@ -114,6 +116,19 @@ def test_the_same_sheet_gives_the_same_bytes(monkeypatch):
     assert [pdf(sheet_of()), html(sheet_of()), markdown(sheet_of())] == first
 
 
+def test_the_date_is_the_one_that_is_set(monkeypatch):
+    """The only date in a PDF is that of SOURCE_DATE_EPOCH, where it is set."""
+    from io import BytesIO
+
+    from pypdf import PdfReader
+
+    sheet = sheet_of()
+    monkeypatch.delenv("SOURCE_DATE_EPOCH", raising=False)
+    assert PdfReader(BytesIO(pdf(sheet))).metadata.creation_date.year == 2000
+    monkeypatch.setenv("SOURCE_DATE_EPOCH", "1700000000")
+    assert PdfReader(BytesIO(pdf(sheet))).metadata.creation_date.isoformat()[:10] == "2023-11-14"
+
+
 def test_another_process_gives_the_same_bytes():
     """Neither the order of hashes nor what was printed before changes a sheet."""
     command = (
@@ -139,6 +154,31 @@ def test_another_process_gives_the_same_bytes():
 
 
 # -- the user's text -----------------------------------------------------------------------------
+
+
+@pytest.mark.parametrize("form", FORMS)
+@pytest.mark.parametrize("text", [*HOSTILE, "<i>\u202e" * 2000], ids=lambda text: text[:12])
+def test_other_texts_of_the_plan_do_no_harm(text, form):
+    """Names of enzyme, lot, fluid and agent are shortened, harmless, and cost no caution."""
+    plan = plan_of(whole=True)
+    demineralise, rinse, digest, stop, hold = plan.steps
+    steps = (demineralise, replace(rinse, fluid=text), digest, replace(stop, agent=text), hold)
+    sheet = bench_sheet(
+        replace(
+            plan,
+            enzyme=replace(plan.enzyme, name=text),
+            lot=replace(plan.lot, id=text),
+            steps=steps,
+            remarks=(text,),
+        ),
+        16,
+    )
+    shown = FORMS[form](sheet)
+
+    assert all(squeezed(caution.text) in squeezed(shown) for caution in sheet.cautions)
+    assert squeezed(shown).count(squeezed(deferral())) > 1
+    assert "\u202e" not in shown
+    assert {"script", "a", "img"}.isdisjoint(parsed_html(html(sheet))[1])
 
 
 @pytest.mark.parametrize("form", FORMS)
@@ -212,13 +252,11 @@ def test_ten_thousand_characters_leave_the_layout_whole():
     """Very long words and notes are repeated in full, break, and do not crowd the head."""
     words = "".join(f"{n:05d}" for n in range(2000))
     sheet = sheet_of(title=words, notes=words)
-    pages = pdf_pages(pdf(sheet))
-    text = squeezed("".join(pages))
-    text = re.sub(r"page\dof\ddigestplan.{1,200}?…", "", text)  # what stands at the foot
+    document = pdf(sheet)
 
     assert len(sheet.title) <= 160
-    assert text.count(words) == 2
-    assert len(pages) <= 8
+    assert squeezed(pdf_text(document)).count(words) == 2
+    assert len(pdf_pages(document)) <= 8
     assert "overflow-wrap: break-word" in html(sheet)
 
 

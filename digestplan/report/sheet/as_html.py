@@ -42,7 +42,8 @@ tr.across { break-after: avoid; }
 th { font-size: .74rem; text-align: left; border-bottom: 1pt solid #000; padding: .05rem .3rem; }
 td { border-bottom: .5pt solid #999; padding: .12rem .3rem; vertical-align: middle; }
 td.small { font-size: .78rem; line-height: 1.15; }
-td.strong { font-size: 1.25rem; font-weight: bold; line-height: 1.1; }
+td.strong, td.time { font-size: 1.25rem; font-weight: bold; line-height: 1.1; }
+td.time { white-space: nowrap; } td small { font-size: .78rem; font-weight: normal; }
 td.tick { font-size: 1.4rem; line-height: 1; }
 td.blank { border-left: .5pt solid #999; font-size: .74rem; text-align: right; }
 tr.across td { font-weight: bold; background: #e4e4e4; }
@@ -157,10 +158,18 @@ def _row(columns: tuple[Column, ...], row: Row) -> str:
         return f'<tr class="across"><td colspan="{len(columns)}">{_safe(row.cells[0])}</td></tr>'
     cells = []
     for column, cell in zip(columns, row.cells, strict=True):
-        text = _BOX if column.kind == "tick" and not row.quiet else _safe(cell)
-        cells.append(f'<td class="{column.kind}">{text}</td>')
+        cells.append(f'<td class="{column.kind}">{_cell(column, cell, row)}</td>')
     quiet = ' class="quiet"' if row.quiet else ""
     return f"<tr{quiet}>{''.join(cells)}</tr>"
+
+
+def _cell(column: Column, cell: str, row: Row) -> str:
+    if column.kind == "tick" and not row.quiet:
+        return _BOX
+    day, blank, time = cell.partition(" ")
+    if column.kind == "time" and time:
+        return f"<small>{_safe(day)}</small>{blank}{_safe(time)}"
+    return _safe(cell)
 
 
 def _caution(caution: SheetCaution) -> str:

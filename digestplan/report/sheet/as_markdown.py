@@ -97,7 +97,7 @@ def _cells(columns: tuple[Column, ...], row: Row) -> list[str]:
 def _cell(column: Column, cell: str, row: Row) -> str:
     if column.kind == "tick":
         return "" if row.quiet else "☐"
-    if column.kind == "strong":
+    if column.kind in {"strong", "time"}:
         return f"**{safe(cell)}**" if cell else ""
     if column.kind == "blank" and not row.quiet:
         return f"{_BLANK * 6} {safe(cell)}".rstrip()

@@ -293,9 +293,20 @@ class _Writer:
             return [self.text(row.cells[0], "across"), *[""] * (len(columns) - 1)]
         cells: list[Any] = []
         for column, cell in zip(columns, row.cells, strict=True):
+            if column.kind == "time":
+                cells.append(self._time(cell))
+                continue
             text = "☐" if column.kind == "tick" and not row.quiet else cell
             cells.append(self.text(text, f"cell {column.kind}"))
         return cells
+
+    def _time(self, cell: str) -> Paragraph:
+        day, _, time = cell.partition(" ")
+        if not time:
+            return self.text(cell, "cell strong")
+        size = 7.5 * self.scale
+        before = f'<font name="{_FONT}" size="{size:.2f}">{escape(self.plain(day))}</font> '
+        return self.text(time, "cell strong", before)
 
     def _caution(self, caution: SheetCaution) -> Flowable:
         level = caution.level.upper()

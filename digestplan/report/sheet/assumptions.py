@@ -2,6 +2,7 @@
 
 from collections.abc import Iterable, Iterator, Mapping
 from dataclasses import fields, is_dataclass
+from itertools import groupby
 from typing import Any
 
 from digestplan.forecast.library_values import GENERAL, treatment_values
@@ -29,10 +30,10 @@ def assumptions(forecast: Forecast) -> tuple[tuple[str, str], ...]:
         plan's own first. What is done at the bench, and stands on the sheet as such, is not
         repeated.
     """
-    gathered: dict[str, list[str]] = {says: [] for says in _SAYS.values()}
+    gathered: dict[str, list[Value]] = {says: [] for says in _SAYS.values()}
     for value in _values(forecast):
-        gathered.setdefault(_where(value), []).append(_told(value))
-    rows = [(where, "; ".join(dict.fromkeys(items))) for where, items in gathered.items() if items]
+        gathered.setdefault(_where(value), []).append(value)
+    rows = [(where, _told(values)) for where, values in gathered.items() if values]
     return (*rows, *_laws(forecast.plan))
 
 
@@ -79,9 +80,15 @@ def _where(value: Value) -> str:
     )
 
 
-def _told(value: Value) -> str:
-    told = f"{_name(value)} {value_text(value)}"
-    return told if value.origin in _SAYS else f"{told} [{short(value.source, 200)}]"
+def _told(values: list[Value]) -> str:
+    """Values in a row; those of the library that follow one another share their source."""
+    parts = []
+    for source, group in groupby(values, key=lambda value: value.source):
+        together = list(group)
+        told = "; ".join(dict.fromkeys(f"{_name(v)} {value_text(v)}" for v in together))
+        ours = together[0].origin in _SAYS
+        parts.append(told if ours else f"{told} [{short(source, 200)}]")
+    return "; ".join(parts)
 
 
 def _name(value: Value) -> str:

@@ -1,6 +1,7 @@
 """From a plan to its sheet: amounts rounded, forecast once more, laid out from top to bottom."""
 
 from datetime import datetime
+from typing import Literal
 
 from digestplan import __version__, library
 from digestplan.forecast.result import Forecast
@@ -32,6 +33,7 @@ from digestplan.report.sheet.typed import as_typed, celsius, short, value_text
 from digestplan.report.verdict import verdict
 
 _HEAD = 160  # characters of a title that fit the head of a page
+_BRIEF = 600  # characters of notes that are printed in the usual type
 _MARK = "•"
 
 
@@ -82,7 +84,7 @@ def _cautions(told: Forecast) -> tuple[SheetCaution, ...]:
             c.level,
             "whole plan" if c.step is None else f"step {c.step + 1}, {told.steps[c.step].do}",
             c.code,
-            short(c.text, 2000),
+            short(c.text, 10 * len(c.text)),
         )
         for c in told.cautions
     )
@@ -149,7 +151,8 @@ def _written(plan: Plan) -> tuple[Block, ...]:
     if " ".join(title.split()) != short(plan.title, _HEAD).strip("\u2068\u2069"):
         blocks.append(Lines(("Title in full:", *title.split("\n")), "small"))
     if notes.strip():
-        blocks.append(Lines(("Notes:", *notes.split("\n")), "small"))
+        size: Literal["normal", "small"] = "normal" if len(notes) <= _BRIEF else "small"
+        blocks.append(Lines(("Notes:", *notes.split("\n")), size))
     return tuple(blocks)
 
 
@@ -198,9 +201,9 @@ def _clock_blocks(plan: Plan, to_do: tuple[Action, ...]) -> tuple[Block, ...]:
 def _clock_table(start: datetime | None, to_do: tuple[Action, ...]) -> Table:
     columns = (
         Column("", 4, "tick"),
-        Column("When", 13, "strong"),
+        Column("When", 14, "time"),
         Column("Step", 6, "small"),
-        Column("Do", 41),
+        Column("Do", 40),
         Column("What should be seen", 25, "small"),
         Column("Done, initials", 11, "blank"),
     )
@@ -224,7 +227,8 @@ def when(action: Action) -> str:
     """Return the time of an action as it stands in the table."""
     mark = "" if action.attended else f"\u00a0{_MARK}"
     if action.at is not None:
-        return f"{words.to_the_minute(action.at):%H:%M}{mark}"
+        day = day_of(action).split(" ")[0]
+        return f"{day} {words.to_the_minute(action.at):%H:%M}{mark}"
     sign, minutes = "−" if action.hours < 0 else "+", round(60 * abs(action.hours))
     return f"{sign}{minutes // 60}:{minutes % 60:02d}"
 

@@ -26,6 +26,7 @@ _STRIP = 16.0  # height of the strip of temperatures, below the axis of time
 _HATCH, _STEP = 5.0, 1.0  # distance of the hatching, and how finely it is cut
 _TICKS_H = (0.05, 0.1, 0.25, 0.5, 1, 2, 3, 4, 6, 8, 12, 24, 48, 96, 168, 336, 672, 1344, 2688, 5376)
 _MOST_TICKS = 9
+_DAY = 60.0  # points that a day takes up
 _NARROW = 34.0  # points under which a plateau carries no temperature
 _CHARACTER = 0.55  # width of a character over its size
 
@@ -94,11 +95,13 @@ def _axes(chart: Chart, frame: _Frame) -> Parts:
         y = frame.y(extent)
         strokes.append(_line("grid", (frame.left, y), (frame.right, y)))
         labels.append(Label(f"{100 * extent:.0f} %", (frame.left - 4, y - 3), "end"))
-    for hours, text, day in _ticks(chart, frame):
+    ticks = _ticks(chart, frame)
+    days = [frame.x(hours) for hours, _, day in ticks if day]
+    for hours, text, day in ticks:
         x = frame.x(hours)
         strokes.append(_line("axis", (x, frame.bottom), (x, frame.bottom - 4)))
         labels.append(Label(text, (x, frame.bottom - 13)))
-        if day:
+        if day and not any(x < later < x + _DAY for later in days):
             labels.append(Label(day, (x, frame.bottom - 23), bold=True))
     corners = ((frame.left, frame.bottom), (frame.right, frame.bottom))
     strokes.append(_line("axis", *corners))

@@ -99,13 +99,14 @@ class Facts:
 class Column:
     """A column of a table.
 
-    ``kind`` is ``text``, ``strong`` (read at arm's length), ``small``, ``tick`` (a box) or
-    ``blank`` (a line to write on). ``weight`` is its share of the width.
+    ``kind`` is ``text``, ``strong`` (read at arm's length), ``time`` (the same, with its day
+    small before it), ``small``, ``tick`` (a box) or ``blank`` (a line to write on). ``weight`` is
+    its share of the width.
     """
 
     title: str
     weight: float
-    kind: Literal["text", "strong", "small", "tick", "blank"] = "text"
+    kind: Literal["text", "strong", "time", "small", "tick", "blank"] = "text"
 
 
 @dataclass(frozen=True, slots=True)
