@@ -23,7 +23,7 @@ _LOCK = 0x64677065  # of this program, among a PostgreSQL database's advisory lo
 _OLDEST_SQLITE = (3, 37)  # STRICT tables
 _FLUSH = """SELECT set_config('synchronous_commit', 'on', true)
 WHERE current_setting('synchronous_commit') = 'off'"""
-_PATIENCE = 10.0  # [s]
+_PATIENCE = 30.0  # [s] a busy machine is waited for
 
 
 def make_engine(url: URL, timeout: float) -> Engine:

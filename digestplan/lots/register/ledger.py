@@ -41,7 +41,7 @@ from digestplan.lots.register.tables import rows_with
 from digestplan.problems import InputError, Problem
 
 _READ = 1000  # rows fetched at a time
-_PATIENCE = 10.0  # [s]
+_PATIENCE = 30.0  # [s] a busy machine is waited for
 
 
 @dataclass(frozen=True, slots=True)
