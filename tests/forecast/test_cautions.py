@@ -105,7 +105,7 @@ OTHERS = {
     "below-freezing": (soft(digest(-5)), soft(digest(4))),
     "ph-outside-range": (soft(digest(ph=5.5)), soft(digest(ph=7.5))),
     "ph-slows": (
-        soft(digest(ratio="1:50", ph=7.1, ph_at="37 degC"), enzyme="trypsin"),
+        soft(digest(ratio="1:50", ph=7.02, ph_at="37 degC"), enzyme="trypsin"),
         soft(digest(ratio="1:50", ph=8.2, ph_at="37 degC"), enzyme="trypsin"),
     ),
     "calcium-missing": (soft(digest(calcium=None)), soft(digest(calcium="5 mM"))),

@@ -3,8 +3,6 @@
 ``DIGESTPLAN_TEST_POSTGRES`` holds the URL of a database in which schemas may be made and dropped.
 """
 
-
-
 import os
 import uuid
 from datetime import datetime

@@ -1,7 +1,5 @@
 """Events check themselves, and survive being written down."""
 
-
-
 import json
 import subprocess
 import sys

@@ -1,7 +1,5 @@
 """One contract for every database: what goes in stays in, once, whole and as it was written."""
 
-
-
 import json
 import sqlite3
 from dataclasses import replace

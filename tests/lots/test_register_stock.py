@@ -1,7 +1,5 @@
 """What the events of a lot add up to, corrections applied."""
 
-
-
 import random
 from datetime import datetime, timedelta
 from itertools import pairwise

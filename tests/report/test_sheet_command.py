@@ -24,6 +24,7 @@ STARTS = {
 def asked(output, **more):
     """What the command line hands over."""
     told = {"plan": str(DEMO), "output": output, "json": False, "draws": 32, "seed": 1}
+    told["register"] = None
     return argparse.Namespace(**{**told, **more})
 
 
