@@ -40,14 +40,16 @@ def arrhenius_factor(
     ----------
     .. [1] S. Arrhenius, Z. Phys. Chem. 4, 226, 1889.
     """
-    scaled = np.asarray(activation_energy) / GAS_CONSTANT
-    at_reference = np.asarray(scaled / reference_temperature)
-    factor = np.asarray(np.divide(scaled, temperature))
+    scaled = np.asarray(activation_energy, dtype=float) / GAS_CONSTANT
+    at_reference: Array = np.asarray(scaled / np.asarray(reference_temperature, dtype=float))
+    factor: Array = np.asarray(scaled / np.asarray(temperature, dtype=float))
     if factor.ndim == 0 or np.broadcast_shapes(factor.shape, at_reference.shape) != factor.shape:
-        return np.exp(at_reference - factor)
+        apart: Array = np.exp(at_reference - factor)
+        return apart
     # in place: one large array, not three, for fresh memory costs more than the exponential
     np.subtract(at_reference, factor, out=factor)
-    return np.exp(factor, out=factor)
+    np.exp(factor, out=factor)
+    return factor
 
 
 def eyring_factor(
