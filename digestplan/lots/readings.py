@@ -129,8 +129,8 @@ def read_end_points(path: str | Path) -> EndPoints:
     Parameters
     ----------
     path
-        A CSV file with the columns ``series`` (standard, sample or blank), ``amount [µmol]``
-        (of the standards) and ``signal``.
+        A CSV file with the columns ``series`` (standard, sample or blank), ``signal`` and, where
+        there are standards, their ``amount [µmol]``.
 
     Returns
     -------
@@ -141,10 +141,20 @@ def read_end_points(path: str | Path) -> EndPoints:
         path,
         (
             Column("series", choices=("standard", "sample", "blank"), example="series"),
-            Column("amount", _moles, low=0.0, may_be_empty=True, example="amount [µmol]"),
+            Column(
+                "amount",
+                _moles,
+                otherwise="",
+                low=0.0,
+                may_be_empty=True,
+                example="amount [µmol]",
+            ),
             Column("signal", example="signal"),
         ),
     )
+    import pandas as pd
+
+    table["amount"] = pd.to_numeric(table["amount"], errors="coerce")  # where there is no column
     standard = table["series"] == "standard"
     missing = table[standard & table["amount"].isna()]
     if len(missing):

@@ -18,6 +18,7 @@ Array = NDArray[np.float64]
 Form = Literal["dry", "solution", "glycerol"]
 
 _BENDS = 0.01  # two-sided level at which a logarithm of activity counts as bending
+_LEAST = 3  # measurements at one temperature for a rate there
 
 
 @dataclass(frozen=True, slots=True)
@@ -314,10 +315,13 @@ def _model(hours: Array, levers: Array, *, energetic: bool) -> Model:
 
 def _start(kelvin: Array, levers: Array, t: Array, a: Array) -> list[float]:
     """Straight lines in ln(activity), temperature by temperature, then Arrhenius through them."""
-    found = []
+    found: list[tuple[float, float, float]] = []
+    if np.unique(kelvin, return_counts=True)[1].max() < _LEAST:
+        message = f"{_LEAST} measurements or more at one temperature are needed"
+        raise InputError(Problem("activity", message))
     for one in np.unique(kelvin):
         used = (kelvin == one) & (a > 0)
-        if len(np.unique(t[used])) < 2 or np.count_nonzero(used) < 3:
+        if len(np.unique(t[used])) < 2 or np.count_nonzero(used) < _LEAST:
             continue
         line = fit_line(t[used], np.log(a[used]), a[used] ** 2)
         if line["slope"] < 0:

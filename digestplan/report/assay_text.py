@@ -117,12 +117,15 @@ def _plus_minus(result: Result, scale: float = 1.0) -> str:
 
 def _results(outcome: AssayOutcome) -> Iterator[str]:
     unit = outcome.setup.unit
+    told = []
     if outcome.fraction is not None:
-        yield f"Activity: {_plus_minus(outcome.fraction, 100)} % of the label"
+        told.append(f"{_plus_minus(outcome.fraction, 100)} % of the label")
     if outcome.per_mass is not None:
-        yield f"  {_plus_minus(outcome.per_mass, 1 / _MG_PER_G)} {unit} per mg of enzyme"
+        told.append(f"{_plus_minus(outcome.per_mass, 1 / _MG_PER_G)} {unit} per mg of enzyme")
     if outcome.per_volume is not None:
-        yield f"  {_plus_minus(outcome.per_volume)} {unit} per mL of stock"
+        told.append(f"{_plus_minus(outcome.per_volume)} {unit} per mL of stock")
+    for place, text in enumerate(told):
+        yield f"{'' if place else 'Activity: ':10}{text}"
 
 
 def _traces(outcome: AssayOutcome) -> Iterator[str]:

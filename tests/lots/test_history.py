@@ -13,6 +13,7 @@ from hypothesis import strategies as st
 from digestplan.kinetics.lattice import even_deviates
 from digestplan.lots.history import (
     History,
+    Opening,
     Stretch,
     Thaw,
     dimensions,
@@ -257,3 +258,34 @@ def test_a_normal_spread_keeps_mean_and_deviation():
     assert math.exp(m + s**2 / 2) == pytest.approx(0.03, rel=1e-12)
     assert 0.03 * math.sqrt(math.expm1(s**2)) == pytest.approx(0.01, rel=1e-12)
     assert log_moments(Quantity(2.0)) == (math.log(2.0), 0.0)
+
+
+def test_openings_take_their_part():
+    """Each opening takes what the form loses at one, and shares its spread with the others."""
+    dry = replace(DRY, log_opening_loss=math.log(0.02), log_opening_loss_sd=0.5)
+    history = History(
+        (Stretch(0, 100, 277.15),),
+        kinetics={"dry": dry},
+        openings=(Opening(10), Opening(20, count=2), Opening(500)),
+    )
+
+    assert losses(history, {}, 50)["opening", "dry"][0] == pytest.approx(3 * 0.02, rel=1e-12)
+    assert dimensions(history)["opening", "dry"] == 0.5
+    more = losses(history, {("opening", "dry"): np.array([2.0])}, 50)["opening", "dry"][0]
+    assert more == pytest.approx(3 * 0.02 * math.exp(1), rel=1e-12)
+
+
+def test_moments_with_openings():
+    """The exact mean and spread with openings and thaws are those of many draws."""
+    of = replace(SOLUTION, log_opening_loss=math.log(0.03), log_opening_loss_sd=0.6)
+    history = History(
+        (Stretch(0, 2000, 277.15, form="solution"),),
+        (Thaw(10), Thaw(20)),
+        {"solution": of},
+        openings=(Opening(5, "solution"), Opening(50, "solution", 2)),
+    )
+    mean, sd = log_remaining_moments(history, 2000)
+    drawn = np.log(draw_remaining(history, 2000, 2**16))
+
+    assert mean == pytest.approx(drawn.mean(), abs=3e-3)
+    assert sd == pytest.approx(drawn.std(), rel=2e-2)

@@ -186,6 +186,8 @@ def _refuse_constant(name: str) -> float:
 def _new_file(target: Path) -> Iterator[Path]:
     """Give a path to write to, which becomes the target when all went well, and only then."""
     name = str(target)
+    if target.is_dir():
+        raise refusal(name, "this is a folder; the name of a file in it is wanted")
     part = target.with_name(f".{target.name}.{new_id()}")
     try:
         if target.exists():
