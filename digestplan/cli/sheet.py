@@ -8,6 +8,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING
 
 from digestplan.cli import diagnostics, output
+from digestplan.cli.plans import plan_of
 from digestplan.problems import InputError, Problem
 
 if TYPE_CHECKING:
@@ -36,11 +37,10 @@ def run(chosen: argparse.Namespace) -> int | None:
 
 
 def _write(chosen: argparse.Namespace, target: Path | None, writer: Writer | None) -> None:
-    from digestplan.plan.read import read_plan
     from digestplan.report.sheet.build import bench_sheet
     from digestplan.report.sheet.save import save
 
-    plan = read_plan(chosen.plan)
+    plan = plan_of(chosen)
     sheet = bench_sheet(plan, chosen.draws, chosen.seed)
     if target is not None and writer is not None:
         save(target, writer(plan, sheet))
