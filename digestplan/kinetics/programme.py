@@ -214,7 +214,8 @@ class _Motion:
         line = self.bath + self.slope * (time - self.lag)
         if self.lag == 0:
             return line
-        return line + self.settling * np.exp(-time / self.lag)
+        settled: Array = line + self.settling * np.exp(-time / self.lag)
+        return settled
 
 
 def compile_programme(

@@ -1,6 +1,6 @@
 """Digest: fresh enzyme in its liquid, through a temperature programme."""
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import replace
 
 import numpy as np
@@ -228,7 +228,7 @@ def _told(
     timeline: Timeline,
     liquid: Liquid,
     set_points: Array,
-    brought: dict[str, Array],
+    brought: Mapping[str, Array],
 ) -> DigestForecast:
     plan, course, response = job.plan, timeline.course, job.response
     begin = on_clock(plan.start, clock)
