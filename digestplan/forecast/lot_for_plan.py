@@ -1,6 +1,6 @@
 """Is a lot still good enough for a plan: what the plan needs of it, and what that asks for."""
 
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass, replace
 from datetime import date, datetime, timedelta
 from functools import cache
@@ -22,8 +22,9 @@ from digestplan.quantities import Quantity
 Array = NDArray[np.float64]
 
 CONFIDENCE = 0.9  # where no plan says how sure "enough" must be
-_FARTHEST = 10  # doublings of the label's activity, up and down, that are tried
+_FARTHEST = 7.0  # how far from the label, as a logarithm, a needed fraction is looked for
 _TOLERANCE = 1e-4  # of the needed fraction, relative
+_FEW, _APART = 250, 0.02  # draws that tell roughly where it is, and how far off that may be
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -156,28 +157,12 @@ def fraction_needed(plan: Plan, n_draws: int = DRAWS, seed: int = SEED) -> float
     if not counts_on_label(plan):
         return None
     by = deadline(plan)
-
-    @cache
-    def spare_hours(log_fraction: float) -> float:
-        remaining = replace(plan.lot.remaining, quantity=Quantity(float(np.exp(log_fraction))))
-        lot = replace(plan.lot, remaining=remaining)
-        opens = quantile(forecast(replace(plan, lot=lot), n_draws, seed).ready_h, plan.confidence)
-        return -np.inf if opens is None else by - opens
-
-    step = np.log(2.0)
-    enough = next((n for n in range(_FARTHEST + 1) if spare_hours(n * step) >= 0), None)
-    if enough is None:
-        return np.inf
-    if enough == 0:
-        below = (n for n in range(-1, -_FARTHEST - 1, -1) if spare_hours(n * step) < 0)
-        enough = next(below, -_FARTHEST - 1) + 1
-    high = enough * step
-
-    def rising(share: Array) -> Array:
-        return np.array([spare_hours(float(high + (s - 2) * step)) for s in share])
-
-    share = rising_root(rising, np.array([1.0]), np.array([2.0]), _TOLERANCE / 2)
-    return float(np.exp(high + (share[0] - 2) * step))
+    few = min(n_draws, _FEW)
+    tolerance = _TOLERANCE if few == n_draws else _APART / 4
+    near = _smallest(_spare_hours(plan, by, few, seed), 0.0, np.log(2.0), tolerance)
+    if few < n_draws and np.isfinite(near):
+        near = _smallest(_spare_hours(plan, by, n_draws, seed), near, _APART, _TOLERANCE)
+    return float(np.exp(near))
 
 
 def counts_on_label(plan: Plan) -> bool:
@@ -195,6 +180,44 @@ def deadline(plan: Plan) -> float:
 
 
 # -- the parts ------------------------------------------------------------------------------
+
+
+def _spare_hours(plan: Plan, by: float, n_draws: int, seed: int) -> Callable[[float], float]:
+    """Hours to spare before the deadline, against the logarithm of the remaining fraction."""
+
+    @cache
+    def spare(log_fraction: float) -> float:
+        remaining = replace(plan.lot.remaining, quantity=Quantity(float(np.exp(log_fraction))))
+        changed = replace(plan, lot=replace(plan.lot, remaining=remaining))
+        opens = quantile(forecast(changed, n_draws, seed).ready_h, plan.confidence)
+        return -np.inf if opens is None else by - opens
+
+    return spare
+
+
+def _smallest(
+    spare: Callable[[float], float], start: float, step: float, tolerance: float
+) -> float:
+    """Smallest logarithm of a fraction with hours to spare, looked for from a start in steps."""
+    low = high = start
+    if spare(start) >= 0:
+        while spare(low) >= 0 and low > -_FARTHEST:
+            high, low = low, low - step
+            step *= 2
+    else:
+        while spare(high) < 0:
+            if high > _FARTHEST:
+                return np.inf
+            low, high = high, high + step
+            step *= 2
+    if spare(low) >= 0:
+        return low
+
+    def rising(share: Array) -> Array:
+        return np.array([spare(float(low + (s - 1) * (high - low))) for s in share])
+
+    share = rising_root(rising, np.array([1.0]), np.array([2.0]), tolerance / (2 * (high - low)))
+    return float(low + (share[0] - 1) * (high - low))
 
 
 def _chance(posterior: LotPosterior, needed: float) -> float:
