@@ -8,7 +8,10 @@ from functools import cache
 import numpy as np
 from numpy.typing import NDArray
 
-from digestplan.forecast.run import DRAWS, SEED, forecast
+from digestplan.forecast.draws import Draws
+from digestplan.forecast.passage import Passage
+from digestplan.forecast.run import DRAWS, SEED, prepare
+from digestplan.forecast.steps.base import Job
 from digestplan.forecast.window import quantile
 from digestplan.kinetics.roots import rising_root
 from digestplan.lots.check import began, check_lot
@@ -175,8 +178,8 @@ def deadline(plan: Plan) -> float:
     """Hours from a plan's start until the end of its last visit, or else of its last step."""
     if plan.start is not None and plan.visits:
         return (max(visit.end for visit in plan.visits) - plan.start) / timedelta(hours=1)
-    last = forecast(plan, 1).steps[-1]
-    return last.start_h + last.hours
+    last = Passage(_job(plan, 1.0, 1, SEED)).parts[-1]
+    return last.start + last.hours
 
 
 # -- the parts ------------------------------------------------------------------------------
@@ -184,15 +187,25 @@ def deadline(plan: Plan) -> float:
 
 def _spare_hours(plan: Plan, by: float, n_draws: int, seed: int) -> Callable[[float], float]:
     """Hours to spare before the deadline, against the logarithm of the remaining fraction."""
+    job = _job(plan, 1.0, n_draws, seed)
 
     @cache
     def spare(log_fraction: float) -> float:
-        remaining = replace(plan.lot.remaining, quantity=Quantity(float(np.exp(log_fraction))))
-        changed = replace(plan, lot=replace(plan.lot, remaining=remaining))
-        opens = quantile(forecast(changed, n_draws, seed).ready_h, plan.confidence)
+        changed = _with_remaining(plan, float(np.exp(log_fraction)))
+        opens = quantile(Passage(replace(job, plan=changed)).ready, plan.confidence)
         return -np.inf if opens is None else by - opens
 
     return spare
+
+
+def _job(plan: Plan, fraction: float, n_draws: int, seed: int) -> Job:
+    plan = _with_remaining(plan, fraction)
+    return prepare(plan, Draws(plan, n_draws, seed))
+
+
+def _with_remaining(plan: Plan, fraction: float) -> Plan:
+    remaining = replace(plan.lot.remaining, quantity=Quantity(fraction))
+    return replace(plan, lot=replace(plan.lot, remaining=remaining))
 
 
 def _smallest(

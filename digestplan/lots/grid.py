@@ -1,7 +1,7 @@
 """Probability of ln(remaining) in bins, branch by branch, and how assays reweight it."""
 
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from typing import Literal
 
 import numpy as np
@@ -153,6 +153,7 @@ class Grid:
     branches: Branches
     edges: Array
     masses: Array
+    _below_bins: list[Array] = field(default_factory=list, repr=False)
 
     def chance_above(self, fraction: float, time: float) -> float:
         """Probability that more than a fraction remains at a time."""
@@ -193,8 +194,11 @@ class Grid:
         whole = np.clip(np.searchsorted(self.edges, at_anchor, side="right") - 1, 0, n - 1)
         share = (at_anchor - self.edges[whole]) / (self.edges[whole + 1] - self.edges[whole])
         rows = np.arange(len(self.masses))[:, None]
-        cumulative = np.cumsum(self.masses, axis=1) - self.masses
-        below = cumulative[rows, whole] + np.clip(share, 0.0, 1.0) * self.masses[rows, whole]
+        if not self._below_bins:
+            self._below_bins.append(np.cumsum(self.masses, axis=1) - self.masses)
+        below = (
+            self._below_bins[0][rows, whole] + np.clip(share, 0.0, 1.0) * self.masses[rows, whole]
+        )
         total: Array = below.sum(axis=0)
         return total
 

@@ -481,3 +481,42 @@ def test_lot_commands_load_no_more_than_they_need():
     assert loaded("lot", "--help") == []
     assert loaded("lot", "check", "--help") == []
     assert "pandas" not in loaded("lot", "list", "--register", "nowhere.sqlite")
+
+
+@pytest.mark.parametrize(
+    ("keep", "loads"),
+    [(("label_activity", "remaining"), False), (("label_activity",), True), ((), True)],
+)
+def test_a_forecast_touches_the_register_only_where_it_must(demo, tmp_path, keep, loads):
+    """A plan that names a lot and says all of it itself does not load the database library."""
+    lines = Path(PLAN).read_text("utf-8").splitlines()
+    kept = [x for x in lines if x.split(" ")[0] not in {"label_activity", "remaining"} - set(keep)]
+    at = kept.index("[lot]") + 1
+    plan = tmp_path / "plan.toml"
+    plan.write_text("\n".join([*kept[:at], 'id = "CH-2307"', *kept[at:]]), "utf-8")
+    script = (
+        "import sys\nfrom digestplan.cli.main import main\nstatus = main(sys.argv[1:])\n"
+        "print('sqlalchemy' in sys.modules, status, file=sys.stderr)"
+    )
+    words = ("forecast", str(plan), "--draws", "50", "--register", str(tmp_path / "lots.sqlite"))
+    done = subprocess.run(
+        [sys.executable, "-c", script, *words], capture_output=True, text=True, check=True
+    )
+
+    assert done.stderr.split() == [str(loads), "0"]
+    assert ("Lot CH-2307" in done.stdout) == loads or "remaining" in keep
+
+
+def test_a_forecast_with_a_lot_that_is_not_there_is_refused(demo, tmp_path):
+    """A lot that the register does not know, and no register at all, end with 1 and a message."""
+    plan = tmp_path / "plan.toml"
+    text = Path(PLAN).read_text("utf-8").replace('remaining = "0.82 ± 0.06"', 'id = "CH-9999"')
+    plan.write_text(text, "utf-8")
+    status, out, err = demo("forecast", str(plan))
+    assert (status, out) == (1, "")
+    assert err.startswith(f"{plan}: lot.id: ")
+    assert 'no lot "CH-9999"' in err
+
+    status, out, err = demo("forecast", str(plan), "--register", str(tmp_path / "none.sqlite"))
+    assert (status, out) == (1, "")
+    assert "no lot register here" in err
