@@ -18,6 +18,7 @@ from digestplan.forecast.steps.base import Carried, Job
 from digestplan.forecast.steps.digest import advance
 from digestplan.forecast.steps.stop import as_hold
 from digestplan.forecast.timeline import Timeline
+from digestplan.kinetics.damage import keep_loss
 from digestplan.kinetics.dose import Course
 from digestplan.kinetics.inverse import time_to_effect
 from digestplan.kinetics.programme import FOR_EVER
@@ -51,6 +52,25 @@ class Part:
     course: Course
     liquid: Liquid
     open_ended: bool
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Seen:
+    """What each draw shows at a time of its own; arrays of shape (n_draws,).
+
+    Attributes
+    ----------
+    residual
+        Fraction of the enzyme charged that is still active.
+    keep_loss
+        Fraction lost of what must be kept.
+    by_heat
+        The same by heat alone.
+    """
+
+    residual: Array
+    keep_loss: Array
+    by_heat: Array
 
 
 class Passage:
@@ -145,22 +165,21 @@ class Passage:
             elapsed = min(elapsed, part.hours)
         return part.course.at(min(elapsed, FOR_EVER))
 
-    def states_at_each(self, hours: Array) -> tuple[Array, Array]:
+    def seen_at_each(self, hours: Array) -> Seen:
         """
-        Return what is left of the enzyme, and what is lost, at a time of its own for each draw.
+        Look at each draw at a time of its own.
 
         Parameters
         ----------
         hours
-            On the plan's clock, shape (n_draws,); where it is infinite, so is the answer unknown.
+            On the plan's clock, shape (n_draws,); infinite where there is nothing to see.
 
         Returns
         -------
-        residual, keep_loss
-            Fraction of the enzyme charged that is still active, and fraction lost of what must be
-            kept, each of shape (n_draws,); not a number where the time is infinite.
+        seen
+            Not a number where the time is infinite.
         """
-        residual, lost = np.full(len(hours), np.nan), np.full(len(hours), np.nan)
+        residual, lost, by_heat = np.full((3, len(hours)), np.nan)
         starts = np.array([part.start for part in self.parts])
         which = np.searchsorted(starts, hours, side="right") - 1
         for number, part in enumerate(self.parts):
@@ -171,7 +190,8 @@ class Passage:
             charged = np.where(state.charged > 0, state.charged, 1.0)
             residual[draws] = part.course.active(state, draws) / charged
             lost[draws] = self.job.response.keep_loss(state, draws)
-        return residual, lost
+            by_heat[draws] = keep_loss(state.heat)
+        return Seen(residual, lost, by_heat)
 
 
 def untouched(job: Job) -> Carried:

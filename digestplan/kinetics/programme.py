@@ -5,7 +5,6 @@ lag as well), so a cell's node carries only its weights on the set points: thous
 an incubator's error then cost one matrix product.
 """
 
-import itertools
 from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import lru_cache
@@ -223,8 +222,8 @@ def compile_programme(
     nominal: Array,
     lag: float = 0.0,
     breaks: Sequence[float] = (),
-    pieces: int = 1,
     graded: bool = False,
+    cuts: Sequence[float] = (),
 ) -> Cells:
     """
     Cut a temperature programme into cells [1]_.
@@ -239,11 +238,11 @@ def compile_programme(
         Time constant with which the sample follows its bath; 0 for none. [h]
     breaks : sequence of float
         Times at which a cell must end, such as additions of enzyme. [h]
-    pieces : int
-        Into how many cells to cut each of those in which the temperature changes. [1]
     graded : bool
         Give every cell nodes, and cells that grow from the start of each leg and break: for
         what has no closed form at constant temperature either. [1]
+    cuts : sequence of float
+        Further times at which a cell ends, where much happens within one. [h]
 
     Returns
     -------
@@ -259,7 +258,7 @@ def compile_programme(
     .. [1] Newton's law of cooling; common practice.
     """
     return _compiled(
-        tuple(legs), tuple(float(t) for t in nominal), lag, tuple(breaks), pieces, graded
+        tuple(legs), tuple(float(t) for t in nominal), lag, tuple(breaks), graded, tuple(cuts)
     )
 
 
@@ -269,8 +268,8 @@ def _compiled(
     set_points: tuple[float, ...],
     lag: float,
     breaks: tuple[float, ...],
-    pieces: int,
     graded: bool,
+    cuts: tuple[float, ...],
 ) -> Cells:
     """Cut a programme; the same one is asked for again and again while a plan is edited."""
     nominal = np.array(set_points)
@@ -290,7 +289,9 @@ def _compiled(
         motion = _Motion(bath, slope, sample - bath + slope * lag, lag)
         inner = [b - clock for b in breaks if clock < b < clock + leg.hours]
         fresh = number == 0 or leg is waiting or clock in breaks
-        for cell_end in _cell_ends(motion, leg, nominal, inner, pieces, graded, fresh):
+        ends = _cell_ends(motion, leg, nominal, inner, graded, fresh)
+        within = {cut - clock for cut in cuts if clock < cut < clock + leg.hours}
+        for cell_end in sorted(ends | within):
             _add_cell(builder, motion, clock, cell_end, nominal, graded)
         sample = motion.at(leg.hours) if (leg.ramp or lag) else target
         clock += leg.hours
@@ -330,36 +331,33 @@ def _cell_ends(
     leg: Leg,
     nominal: Array,
     inner: Sequence[float],
-    pieces: int,
     graded: bool,
     fresh: bool,
-) -> list[float]:
+) -> set[float]:
     """Times within the leg at which cells end: narrow where the temperature moves."""
     ends = {leg.hours, *inner}
     change = abs(float(motion.slope @ nominal)) * leg.hours
     if leg.ramp:
-        n_cells = max(1, int(np.ceil(change / _WIDEST))) * pieces
+        n_cells = max(1, int(np.ceil(change / _WIDEST)))
         ends.update(leg.hours * i / n_cells for i in range(1, n_cells))
     swing = abs(float(motion.settling @ nominal)) if motion.lag else 0.0
     if swing >= _SETTLED:
-        for low, high in _settling_shares(swing):
-            a, b = -motion.lag * np.log(low), -motion.lag * np.log(high)
-            steps = np.linspace(a, b, pieces + 1)[1:]
-            ends.update(float(s) for s in steps if s < leg.hours)
+        settled = (-motion.lag * float(np.log(share)) for share in _settling_shares(swing))
+        ends.update(end for end in settled if end < leg.hours)
     if graded:
         starts, stops = [0.0, *inner], [*inner, leg.hours]
         for begin, end in zip(starts, stops, strict=True):
             grades = _GRADES if begin or fresh else _FEW_GRADES
             ends.update(begin + (end - begin) * _GROWTH ** float(-n) for n in range(1, grades))
-    return sorted(ends)
+    return ends
 
 
-def _settling_shares(swing: float) -> list[tuple[float, float]]:
-    """Pairs of remaining shares of a settling swing that bound its cells."""
+def _settling_shares(swing: float) -> list[float]:
+    """Shares of a settling swing that remain at the ends of its cells."""
     shares = [1.0]
     while shares[-1] * swing > _WIDEST:
         shares.append(max(shares[-1] - _WIDEST / swing, shares[-1] * np.exp(-1.5)))
     while shares[-1] * swing > _SETTLED:  # the less there is left, the longer a cell may be
         span = next(span for least, span in _SETTLING_SPANS if shares[-1] * swing > least)
         shares.append(max(shares[-1] * np.exp(-span), 0.99 * _SETTLED / swing))
-    return list(itertools.pairwise(shares))
+    return shares[1:]

@@ -30,8 +30,8 @@ from digestplan.plan.model import Digest, Hold, Plan
 Array = NDArray[np.float64]
 
 _LAG_OF_ONE_ML = 2.5 / 60  # [h] common practice: a tube of 1 mL follows its bath in minutes
-_MOST_DEATH = 3.0  # e-folds of inactivation that one moving cell may hold
-_MOST_PIECES = 16
+_MOST_DEATH = 4.0  # e-folds of inactivation that a moving cell may hold where enzyme is fresh
+_DEAD = 35.0  # e-folds after which nothing of it is left that would count
 _USUAL_VOLUMES = 10.0  # of liquid to one of tissue, where the plan does not say
 
 
@@ -193,31 +193,38 @@ def _cells_and_rates(
         assert job.plan.sample.thickness is not None
         half = job.draws.of(job.plan.sample.thickness) / 2
     lag, per_ratio = lag_of(step, volume), concentration_per_ratio(job.plan, job.draws, volume)
-    pieces = 1
-    while True:
-        cells = compile_programme(legs, nominal, lag, breaks, pieces, graded)
+
+    def cut_at(cuts: Sequence[float]) -> tuple[Cells, Rates]:
+        cells = compile_programme(legs, nominal, lag, breaks, graded, cuts)
         temperatures = cells.temperatures(set_points)
-        rates = rates_at(job.enzyme, temperatures, liquid, half, per_ratio, job.damage)
-        wanted = int(np.ceil(_most_death_in_a_moving_cell(cells, rates) / _MOST_DEATH))
-        if wanted <= 1 or pieces > 1:
-            return cells, rates
-        pieces = min(wanted, _MOST_PIECES)
+        return cells, rates_at(job.enzyme, temperatures, liquid, half, per_ratio, job.damage)
+
+    cells, rates = cut_at(())
+    cuts = _cuts(cells, rates, breaks)
+    return cut_at(cuts) if cuts else (cells, rates)
 
 
-def _most_death_in_a_moving_cell(cells: Cells, rates: Rates) -> float:
-    lengths = np.diff(cells.edges)
-    moving = [
-        cell
-        for cell in range(cells.n_cells)
-        if len(cells.nodes[cell]) > 1 and cells.edges[cell] < cells.end
-    ]
-    worst = 0.0
-    for cell in moving:
-        rate = rates.first[list(cells.nodes[cell])].max()
+def _cuts(cells: Cells, rates: Rates, breaks: Sequence[float]) -> list[float]:
+    """Times that cut the moving cells in which much of some draw's living enzyme would die."""
+    gone = np.zeros(rates.first.shape[1])  # e-folds of the slower death so far
+    cuts: list[float] = []
+    for cell in range(cells.n_cells - 1):
+        begin, end = float(cells.edges[cell]), float(cells.edges[cell + 1])
+        if begin in breaks:
+            gone = np.zeros_like(gone)
+        rate = rates.first[list(cells.nodes[cell])]
+        slower = rate.min(axis=0)
         if rates.second is not None:
-            rate = max(rate, rates.second[list(cells.nodes[cell])].max())
-        worst = max(worst, float(rate) * float(lengths[cell]))
-    return worst
+            second = rates.second[list(cells.nodes[cell])]
+            rate, slower = np.maximum(rate, second), np.minimum(slower, second.min(axis=0))
+        if len(rate) > 1 and begin < cells.end:
+            worst = rate.max(axis=0)[gone < _DEAD].max(initial=0.0) * (end - begin)
+            share = _MOST_DEATH / max(worst, _MOST_DEATH)
+            while share < 1:  # each piece as long as all before: what it kills there matters less
+                cuts.append(begin + share * (end - begin))
+                share *= 2
+        gone = gone + slower * (end - begin)
+    return cuts
 
 
 def _told(
