@@ -4,10 +4,12 @@ import math
 from collections.abc import Iterator
 from typing import Any
 
+from digestplan import library
 from digestplan.forecast.amounts import weighed_mass
 from digestplan.forecast.draws import Draws
 from digestplan.forecast.lot_for_plan import LotCheck, counts_on_label
 from digestplan.forecast.lot_words import below_freezing, contradiction
+from digestplan.library.cautions import caution
 from digestplan.lots.grid import Remaining
 from digestplan.plan.model import Digest, Plan
 from digestplan.report import words
@@ -61,7 +63,7 @@ def check_text(check: LotCheck) -> str:
 
 
 def cautions(check: LotCheck) -> list[str]:
-    """Return what speaks against relying on the figures."""
+    """Return what speaks against relying on the figures, and what weighing it in asks for."""
     found, at = [], check.at
     if check.posterior.contradicted:
         found.append(contradiction(check.record, check.posterior))
@@ -71,6 +73,10 @@ def cautions(check: LotCheck) -> list[str]:
     if expiry is not None and expiry < at.date():
         found.append(f"The supplier's date, {expiry.isoformat()}, is past.")
     found += _stock(check)
+    summary = check.record.summary
+    if summary.form == "dry" and check.charge_factor <= _NO_WAY_OUT:  # it says what to weigh in
+        name = library.enzyme(summary.enzyme).name
+        found.append(caution("protease-powder").words(enzyme=name))
     return found
 
 

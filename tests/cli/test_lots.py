@@ -342,12 +342,13 @@ def test_a_contradiction_is_told_in_words_and_beside_the_document(demo):
 
 
 def test_cautions_of_a_check(demo):
-    """Below freezing, past its date, too little in the bottle: each is told."""
+    """Below freezing, past its date, too little in the bottle, powder to weigh: each is told."""
     frozen = told(demo("lot", "check", "CH-2307", *AT))
     late = told(demo("lot", "check", "CH-2109", *AT))
     told(demo("lot", "weigh", "CH-2307", "5 mg", "--at", "2026-03-11"))
     little = told(demo("lot", "check", "CH-2307", "--plan", PLAN, *AT))
 
+    assert "sensitise the airways" in " ".join(frozen.split())
     assert "below 0 °C" in frozen
     assert "below 0 °C" not in late
     assert "supplier's date, 2026-03-01, is past" in late
