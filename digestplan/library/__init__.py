@@ -1,4 +1,4 @@
-"""What is known: enzymes, materials, buffers, reagents and cautions, each value with its source."""
+"""What is known of enzymes, materials, buffers, reagents and units, each value with its source."""
 
 from digestplan.library.assays import AssayEntry, assay, label_at_receipt
 from digestplan.library.load import (
@@ -23,6 +23,8 @@ from digestplan.library.load import (
     reagent,
     solute,
 )
+from digestplan.library.lookup import Entry, entry
+from digestplan.library.units import UnitEntry, unit
 
 __all__ = [
     "SECTIONS",
@@ -30,6 +32,7 @@ __all__ = [
     "Acid",
     "AssayEntry",
     "BufferEntry",
+    "Entry",
     "EnzymeEntry",
     "KnownRunEntry",
     "LibraryValue",
@@ -37,9 +40,11 @@ __all__ = [
     "ReagentEntry",
     "SoluteEntry",
     "Storage",
+    "UnitEntry",
     "UnknownKey",
     "assay",
     "buffer",
+    "entry",
     "enzyme",
     "keys",
     "known_run",
@@ -48,4 +53,5 @@ __all__ = [
     "near",
     "reagent",
     "solute",
+    "unit",
 ]

@@ -8,7 +8,7 @@ from functools import cache, cached_property
 from importlib.resources import files
 from typing import Any
 
-from digestplan.quantities import Quantity, parse_quantity
+from digestplan.quantities import ASSAY_UNITS, Quantity, parse_quantity
 
 SECTIONS = {
     "enzyme": "enzymes.toml",
@@ -17,6 +17,7 @@ SECTIONS = {
     "reagent": "reagents.toml",
     "solute": "solutes.toml",
     "assay": "assays.toml",
+    "unit": "",  # defined with the units themselves
 }
 SOURCE_KINDS = ("published", "common practice", "from memory")
 QUANTITY_KINDS = {
@@ -69,6 +70,7 @@ QUANTITY_KINDS = {
     "micromoles": "positive_number",
     "within": "time",
     "at_receipt": "positive_number",
+    "label_activity": "activity",
 }
 
 
@@ -118,7 +120,8 @@ class EnzymeEntry:
 
     ``laws`` names the extent law by material where it is not the first-order one;
     ``diffusivity`` holds the diffusivity in the tissue by material where it must penetrate;
-    ``reversible`` are the stops that only hold it while they last.
+    ``reversible`` are the stops that only hold it while they last; ``hazards`` are codes of the
+    cautions that come with it.
     """
 
     key: str
@@ -141,6 +144,7 @@ class EnzymeEntry:
     inhibitors: tuple[str, ...]
     working: str
     label: str
+    hazards: tuple[str, ...]
     laws: Mapping[str, str]
     diffusivity: Mapping[str, LibraryValue]
     storage: Mapping[str, Storage]
@@ -287,6 +291,7 @@ def enzyme(key: str) -> EnzymeEntry:
         inhibitors=tuple(raw["inhibitors"]),
         working=raw["working"],
         label=raw["label"],
+        hazards=tuple(raw["hazards"]),
         laws=raw.get("laws", {}),
         diffusivity={m: _value(d, "diffusivity") for m, d in raw.get("diffusivity", {}).items()},
         storage={form: Storage(form, _values(item)) for form, item in forms.items()},
@@ -343,13 +348,16 @@ def known_run(enzyme_key: str, material_key: str) -> KnownRunEntry | None:
 
 
 def keys(section: str) -> tuple[str, ...]:
-    """Return all keys of a section: ``enzyme``, ``material``, ``buffer`` or ``reagent``."""
-    return tuple(_table(SECTIONS[section]))
+    """Return all keys of a section of `SECTIONS`; of ``entry``, those of all sections."""
+    if section == "entry":
+        return tuple(key for part in SECTIONS for key in keys(part))
+    return tuple(ASSAY_UNITS if section == "unit" else _table(SECTIONS[section]))
 
 
 def near(key: str, section: str) -> tuple[str, ...]:
     """Return the keys of a section that are spelt nearly like one that it does not know."""
-    known = keys(section)
-    found = difflib.get_close_matches(key.lower().replace(" ", "-"), known, n=3, cutoff=0.5)
+    known = {k.lower(): k for k in keys(section)}
+    folded = key.lower().replace(" ", "-")
+    found = difflib.get_close_matches(folded, known, n=3, cutoff=0.5)
     inside = [k for k in known if len(key) > 3 and key.lower() in k]
-    return tuple(dict.fromkeys([*found, *inside]))[:3]
+    return tuple(known[k] for k in dict.fromkeys([*found, *inside]))[:3]

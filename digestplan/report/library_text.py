@@ -42,7 +42,7 @@ def entry_document(key: str) -> dict[str, Any]:
     Parameters
     ----------
     key
-        Of an enzyme, a material, a buffer, a reagent or a solute.
+        Of an enzyme, a material, a buffer, a reagent, a solute, an assay or a unit.
 
     Returns
     -------
@@ -92,14 +92,12 @@ def _find(section: str, key: str) -> Any:
 
 
 def _entry(key: str) -> tuple[str, Any]:
-    nearest: list[str] = []
-    for section in library.SECTIONS:
-        try:
-            return section, _find(section, key)
-        except UnknownKey as error:
-            nearest += error.near
-    hint = f"; near: {', '.join(dict.fromkeys(nearest))}" if nearest else ""
-    raise InputError(Problem(key[:60], f"the library has no entry of this key{hint}"))
+    try:
+        return library.entry(key)
+    except UnknownKey as error:
+        hint = f"; near: {', '.join(error.near)}" if error.near else ""
+        problem = Problem(key[:60], f"the library has no entry of this key{hint}")
+        raise InputError(problem) from None
 
 
 def _facts(entry: Any) -> Iterator[tuple[str, Any]]:
