@@ -101,6 +101,13 @@ def inactivation_rate(enzyme: EnzymeDraws, temperature: Array) -> Array:
     )
 
 
+def second_rate(enzyme: EnzymeDraws, temperature: Array) -> Array | None:
+    """Return the rate at which an intermediate form dies, shape (n_nodes, n_draws), or None."""
+    if enzyme.enzyme.inactivation != "two_stage":
+        return None
+    return _at(enzyme, "second_inactivation_rate", "second_inactivation_energy", temperature)
+
+
 def _at(enzyme: EnzymeDraws, rate: str, energy: str, temperature: Array) -> Array:
     if not enzyme.has(energy):
         return enzyme[rate] * np.ones(temperature.shape)
@@ -150,9 +157,8 @@ def rates_at(
     )
     if not isinstance(factor, float):
         activity = activity * factor
-    second = autolysis = penetration = None
-    if law == "two_stage":
-        second = _at(enzyme, "second_inactivation_rate", "second_inactivation_energy", temperature)
+    autolysis = penetration = None
+    second = second_rate(enzyme, temperature)
     if law == "autolysis" and concentration_per_ratio is not None:
         per_concentration = _at(enzyme, "autolysis_rate", "autolysis_energy", temperature)
         autolysis = per_concentration * concentration_per_ratio

@@ -118,6 +118,6 @@ def uncertainty_shares(job: Job, hours: Array) -> list[tuple[str, float]]:
     response = (ranks - ranks.mean()) / ranks.std()
     deviates = np.stack([np.asarray(job.draws.deviate(name)) for name in names])
     deviates = deviates - deviates.mean(axis=1, keepdims=True)
-    coefficients, *_ = np.linalg.lstsq(deviates.T, response, rcond=None)
+    coefficients = np.linalg.solve(deviates @ deviates.T, deviates @ response)
     shares = (coefficients * deviates.std(axis=1)) ** 2
     return sorted(zip(names, map(float, shares), strict=True), key=lambda pair: -pair[1])

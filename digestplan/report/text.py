@@ -1,6 +1,5 @@
 """A forecast as plain text: read in ten seconds, 80 columns, no colour needed."""
 
-import textwrap
 from collections.abc import Callable, Iterator
 
 import numpy as np
@@ -14,6 +13,7 @@ from digestplan.forecast.result import (
 )
 from digestplan.forecast.window import Spread
 from digestplan.report import words
+from digestplan.report.lines import wrapped
 from digestplan.report.verdict import verdict
 
 WIDTH = 79
@@ -36,26 +36,16 @@ def forecast_text(forecast: Forecast) -> str:
         Verdict, table, limits and cautions; lines of at most 79 characters.
     """
     blocks = [
-        _wrapped(verdict(forecast)),
-        _wrapped(words.plain(forecast.plan.title)),
+        wrapped(verdict(forecast)),
+        wrapped(words.plain(forecast.plan.title)),
         *(_step(forecast, step) for step in forecast.steps),
         _visits(forecast),
         _limits(forecast),
         _cautions(forecast),
-        "\n".join(_wrapped(remark, "  ", "") for remark in forecast.plan.remarks),
-        _wrapped(_how(forecast)),
+        "\n".join(wrapped(remark, "  ", "") for remark in forecast.plan.remarks),
+        wrapped(_how(forecast)),
     ]
     return "\n\n".join(block for block in blocks if block) + "\n"
-
-
-def _wrapped(text: str, indent: str = "", first: str | None = None) -> str:
-    return textwrap.fill(
-        text,
-        WIDTH,
-        initial_indent=indent if first is None else first,
-        subsequent_indent=indent,
-        break_on_hyphens=False,
-    )
 
 
 def _step(forecast: Forecast, step: StepForecast) -> str:
@@ -71,7 +61,7 @@ def _step(forecast: Forecast, step: StepForecast) -> str:
     for name, spread, say in rows:
         cells = (spread.p50,) if exact else (spread.p05, spread.p50, spread.p95)
         table.append(f"  {name:<30}" + "".join(f"{say(cell):>12}" for cell in cells))
-    table += [_wrapped(line, "    ", "  ") for line in _facts(step)]
+    table += [wrapped(line, "    ", "  ") for line in _facts(step)]
     return "\n".join(table)
 
 
@@ -146,7 +136,7 @@ def _visits(forecast: Forecast) -> str:
 def _limits(forecast: Forecast) -> str:
     if not forecast.limits:
         return ""
-    return "What limits it\n" + "\n".join(_wrapped(t, "    ", "  - ") for t in forecast.limits)
+    return "What limits it\n" + "\n".join(wrapped(t, "    ", "  - ") for t in forecast.limits)
 
 
 def _cautions(forecast: Forecast) -> str:
@@ -155,7 +145,7 @@ def _cautions(forecast: Forecast) -> str:
     lines = ["Cautions"]
     for caution in forecast.cautions:
         step = "" if caution.step is None else f"step {caution.step + 1}: "
-        lines.append(_wrapped(step + caution.text, " " * 8, f"  {caution.level:<6}"))
+        lines.append(wrapped(step + caution.text, " " * 8, f"  {caution.level:<6}"))
     return "\n".join(lines)
 
 

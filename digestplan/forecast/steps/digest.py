@@ -12,7 +12,12 @@ from digestplan.forecast.amounts import (
     substrate_mass,
     weighed_ratio,
 )
-from digestplan.forecast.conditions import rates_at
+from digestplan.forecast.conditions import (
+    EnzymeDraws,
+    inactivation_rate,
+    rates_at,
+    second_rate,
+)
 from digestplan.forecast.draws import Draws
 from digestplan.forecast.environment import CarriedOver, Liquid, free_calcium, liquid_of, ph_at
 from digestplan.forecast.known_run import susceptibility_for
@@ -194,37 +199,45 @@ def _cells_and_rates(
         half = job.draws.of(job.plan.sample.thickness) / 2
     lag, per_ratio = lag_of(step, volume), concentration_per_ratio(job.plan, job.draws, volume)
 
-    def cut_at(cuts: Sequence[float]) -> tuple[Cells, Rates]:
+    cells = compile_programme(legs, nominal, lag, breaks, graded)
+    cuts = _cuts(cells, job.enzyme, set_points, breaks)
+    if cuts:
         cells = compile_programme(legs, nominal, lag, breaks, graded, cuts)
-        temperatures = cells.temperatures(set_points)
-        return cells, rates_at(job.enzyme, temperatures, liquid, half, per_ratio, job.damage)
-
-    cells, rates = cut_at(())
-    cuts = _cuts(cells, rates, breaks)
-    return cut_at(cuts) if cuts else (cells, rates)
+    temperatures = cells.temperatures(set_points)
+    return cells, rates_at(job.enzyme, temperatures, liquid, half, per_ratio, job.damage)
 
 
-def _cuts(cells: Cells, rates: Rates, breaks: Sequence[float]) -> list[float]:
+def _cuts(
+    cells: Cells, enzyme: EnzymeDraws, set_points: Array, breaks: Sequence[float]
+) -> list[float]:
     """Times that cut the moving cells in which much of some draw's living enzyme would die."""
-    gone = np.zeros(rates.first.shape[1])  # e-folds of the slower death so far
+    nominal = cells.weights @ np.median(set_points, axis=1)
+    warmest = [max(nodes, key=lambda n: nominal[n]) for nodes in cells.nodes]
+    coldest = [min(nodes, key=lambda n: nominal[n]) for nodes in cells.nodes]
+    fastest, _ = _deaths(enzyme, cells.weights[warmest] @ set_points)
+    _, slowest = _deaths(enzyme, cells.weights[coldest] @ set_points)
+    gone = np.zeros(fastest.shape[1])  # e-folds of the slower death so far
     cuts: list[float] = []
     for cell in range(cells.n_cells - 1):
         begin, end = float(cells.edges[cell]), float(cells.edges[cell + 1])
         if begin in breaks:
             gone = np.zeros_like(gone)
-        rate = rates.first[list(cells.nodes[cell])]
-        slower = rate.min(axis=0)
-        if rates.second is not None:
-            second = rates.second[list(cells.nodes[cell])]
-            rate, slower = np.maximum(rate, second), np.minimum(slower, second.min(axis=0))
-        if len(rate) > 1 and begin < cells.end:
-            worst = rate.max(axis=0)[gone < _DEAD].max(initial=0.0) * (end - begin)
+        if len(cells.nodes[cell]) > 1 and begin < cells.end:
+            worst = fastest[cell][gone < _DEAD].max(initial=0.0) * (end - begin)
             share = _MOST_DEATH / max(worst, _MOST_DEATH)
             while share < 1:  # each piece as long as all before: what it kills there matters less
                 cuts.append(begin + share * (end - begin))
                 share *= 2
-        gone = gone + slower * (end - begin)
+        gone = gone + slowest[cell] * (end - begin)
     return cuts
+
+
+def _deaths(enzyme: EnzymeDraws, temperature: Array) -> tuple[Array, Array]:
+    """The faster and the slower of an enzyme's deaths, shape (n_nodes, n_draws). [1/h]."""
+    first, second = inactivation_rate(enzyme, temperature), second_rate(enzyme, temperature)
+    if second is None:
+        return first, first
+    return np.maximum(first, second), np.minimum(first, second)
 
 
 def _told(
