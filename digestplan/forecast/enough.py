@@ -1,6 +1,7 @@
 """How much more enzyme would do: the factor by which every charge has to be multiplied."""
 
 from collections.abc import Callable
+from dataclasses import replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -54,6 +55,8 @@ def dose_factor(job: Job, state: State, target: Array) -> Array:
         Shape (n_draws,); at most 1 where the draw is there.
     """
     response = job.response
+    if state.local is not None:  # at depths that nothing has reached, below 0 by the last digits
+        state = replace(state, local=np.maximum(state.local, 0.0))
     needed = susceptibility_for(
         np.minimum(target, _SURE),
         state,
