@@ -186,7 +186,7 @@ MASSES = [
 ]
 
 
-@pytest.mark.source("P", "Molar masses as printed on labels and in handbooks")
+@pytest.mark.source("P", "Molar masses as printed on labels and in handbooks (from memory)")
 @pytest.mark.parametrize(("key", "mass"), MASSES)
 def test_formulas_of_reagents_weigh_what_handbooks_print(key, mass):
     """The formula of each reagent gives the printed molar mass."""
@@ -208,7 +208,7 @@ BUFFERS = [
 ]
 
 
-@pytest.mark.source("P", "Molar masses as printed on labels and in handbooks")
+@pytest.mark.source("P", "Molar masses as printed on labels and in handbooks (from memory)")
 @pytest.mark.parametrize(("key", "mass"), BUFFERS)
 def test_formulas_of_buffers_weigh_what_handbooks_print(key, mass):
     """The formula of each buffer's acid gives the printed molar mass."""
