@@ -8,6 +8,7 @@ from importlib import import_module
 
 from digestplan import __version__
 from digestplan.cli import diagnostics, output
+from digestplan.cli.comparison_grammar import add_comparisons
 from digestplan.cli.lot_grammar import add_assay, add_lot
 
 _MOST_DRAWS = 1_000_000
@@ -66,6 +67,7 @@ def parser() -> argparse.ArgumentParser:
     commands = top.add_subparsers(title="commands", metavar="COMMAND")
     shared = shared_options()
     _add(commands, shared, "forecast", "forecast", "one plan's forecast, as a short report", "plan")
+    add_comparisons(commands, shared)
     does = "the bench sheet (.pdf, .html or .md), or the times as a calendar (.ics)"
     sheet = _add(commands, shared, "sheet", "sheet", does, "plan")
     sheet.add_argument("-o", "--output", metavar="FILE", help="where it goes; its ending says how")

@@ -1,5 +1,7 @@
 """A plan as it stands, drawn once, from which variants take what does not change."""
 
+from math import inf
+
 from digestplan.forecast.draws import Draws
 from digestplan.forecast.passage import Passage, untouched
 from digestplan.forecast.run import prepare
@@ -27,6 +29,7 @@ class BaseCase:
         enzyme = [i for i, s in enumerate(job.plan.steps) if isinstance(s, Digest | Hold | Stop)]
         self.first = enzyme[0]
         self._before = self._until_enzyme(job)
+        self._fewer: dict[int, BaseCase] = {}
 
     def _until_enzyme(self, job: Job) -> Carried:
         carried = untouched(job)
@@ -34,7 +37,7 @@ class BaseCase:
             _, carried = run_step(step, index, job, carried, open_ended=False)
         return carried
 
-    def passage(self, plan: Plan) -> Passage:
+    def passage(self, plan: Plan, until: float = inf) -> Passage:
         """
         Return the way of a variant.
 
@@ -42,6 +45,8 @@ class BaseCase:
         ----------
         plan
             Differs from the plan in its steps alone, from the first with enzyme on.
+        until
+            Steps that start later than this are left out. [h]
 
         Returns
         -------
@@ -52,14 +57,16 @@ class BaseCase:
         before = self._before
         if self.first and len(job.draws.inputs) != len(self.job.draws.inputs):
             before = self._until_enzyme(job)  # an input less, and those behind it move up
-        return Passage(job, before, self.first)
+        return Passage(job, before, self.first, until)
 
     def fewer(self, n_draws: int) -> "BaseCase":
         """Return the same with the first of its draws alone."""
         if n_draws >= self.job.draws.n_draws:
             return self
-        draws = Draws(self.job.plan, n_draws, self.job.draws.seed)
-        return BaseCase(prepare(self.job.plan, draws), self.main)
+        if n_draws not in self._fewer:
+            draws = Draws(self.job.plan, n_draws, self.job.draws.seed)
+            self._fewer[n_draws] = BaseCase(prepare(self.job.plan, draws), self.main)
+        return self._fewer[n_draws]
 
 
 def base_case(plan: Plan, n_draws: int, seed: int) -> BaseCase:

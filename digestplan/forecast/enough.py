@@ -6,10 +6,11 @@ from dataclasses import replace
 import numpy as np
 from numpy.typing import NDArray
 
+from digestplan.forecast.base_case import BaseCase
 from digestplan.forecast.known_run import susceptibility_for
 from digestplan.forecast.passage import Passage
 from digestplan.forecast.steps.base import Job
-from digestplan.forecast.variants import variant_job, with_enzyme
+from digestplan.forecast.variants import with_enzyme
 from digestplan.forecast.window import quantile
 from digestplan.kinetics.state import State
 from digestplan.plan.model import Digest
@@ -17,7 +18,7 @@ from digestplan.plan.model import Digest
 Array = NDArray[np.float64]
 
 _MOST, _LEAST = 1e4, 1e-4  # factors between which one is looked for
-_NEAR = 1e-4  # relative
+_NEAR = 1e-3  # relative: amounts are weighed to two or three digits
 _ROUNDS = 30
 _SURE = 1 - 1e-9  # an extent nearer to everything than this is not asked for
 
@@ -98,16 +99,16 @@ def enzyme_factor(job: Job, state: State, dose: Array) -> Array:
     return result
 
 
-def factor_for(job: Job, passage: Passage, hour: float, share: float) -> float | None:
+def factor_for(base: BaseCase, passage: Passage, hour: float, share: float) -> float | None:
     """
     Return how many times the enzyme makes so large a share of draws ready at an hour.
 
     Parameters
     ----------
-    job
-        The plan, drawn.
+    base
+        The plan from which the passage comes.
     passage
-        Its way.
+        The way of a variant of it.
     hour
         On the plan's clock. [h]
     share
@@ -118,16 +119,16 @@ def factor_for(job: Job, passage: Passage, hour: float, share: float) -> float |
     factor
         None where no amount would do.
     """
-    state = passage.state_at(hour)
+    job, state = passage.job, passage.state_at(hour)
     dose = dose_factor(job, state, passage.target)
     if is_simple(job):
         return _within_reason(quantile(enzyme_factor(job, state, dose), share))
 
     def missing(log_factor: float) -> float:
         """Logarithm of the factor by which the dose of that share is too small."""
-        variant = variant_job(job, with_enzyme(job.plan, float(np.exp(log_factor))))
-        after = Passage(variant).state_at(hour)
-        factor = quantile(dose_factor(variant, after, passage.target), share)
+        variant = with_enzyme(job.plan, float(np.exp(log_factor)))
+        after = base.passage(variant, hour).state_at(hour)
+        factor = quantile(dose_factor(job, after, passage.target), share)
         return np.log(_MOST) if factor is None else float(np.log(np.clip(factor, _LEAST, _MOST)))
 
     first = quantile(dose, share)

@@ -84,15 +84,21 @@ class Passage:
         What the steps before ``first`` left; None to start at the first step.
     first
         Index of the step to start at.
+    until
+        Steps that start later than this are left out. [h]
     """
 
-    def __init__(self, job: Job, before: Carried | None = None, first: int = 0) -> None:
+    def __init__(
+        self, job: Job, before: Carried | None = None, first: int = 0, until: float = np.inf
+    ) -> None:
         self.job = job
         carried = untouched(job) if before is None else before
         self._begin = carried.state
         self.parts: list[Part] = []
         for index, step in enumerate(job.plan.steps[first:], first):
             last = index == len(job.plan.steps) - 1
+            if carried.clock > until:
+                break
             if not isinstance(step, Digest | Hold | Stop):
                 _, carried = run_step(step, index, job, carried, open_ended=last)
                 continue

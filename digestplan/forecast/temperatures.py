@@ -25,7 +25,7 @@ Array = NDArray[np.float64]
 DEFAULT = (4.0, 20.0, 30.0, 37.0, 45.0, 56.0)  # [°C] what labs have
 COLDEST, WARMEST = 4.0, 65.0  # [°C] of the fine grid
 FINE = 0.5  # [K] its step
-_DRAWS_OF_CURVE = 512  # enough for a picture
+_DRAWS_OF_CURVE, _DRAWS_IN_DEPTH = 512, 128  # enough for a picture
 _DRAWS_OF_ROOT = 256  # where the enzyme for the visit takes many courses
 _AS_GOOD = 0.5  # chance in time from which harm decides
 _CELSIUS = 273.15
@@ -193,7 +193,9 @@ def compare(
             progress(len(options), len(wanted) + len(fine))
     found = None
     if curve:
-        found = _fine_curve(base.fewer(_DRAWS_OF_CURVE), fine, len(wanted), progress)
+        in_depth = base.job.response.geometry is not None
+        few = base.fewer(_DRAWS_IN_DEPTH if in_depth else _DRAWS_OF_CURVE)
+        found = _fine_curve(few, fine, len(wanted), progress)
     return Comparison(
         plan,
         base.job.draws.n_draws,
@@ -269,8 +271,9 @@ def _charge_for(base: BaseCase, passage: Passage, visit: float) -> float | None:
     if mass is None:
         return None
     if not is_simple(job):
-        passage = base.fewer(_DRAWS_OF_ROOT).passage(job.plan)
-    factor = factor_for(passage.job, passage, visit, job.plan.confidence)
+        base = base.fewer(_DRAWS_OF_ROOT)
+        passage = base.passage(job.plan, visit)
+    factor = factor_for(base, passage, visit, job.plan.confidence)
     return None if factor is None else mass * factor
 
 

@@ -112,3 +112,42 @@ FORECAST = record(
     window=WINDOW,
     limits={"type": "array", "items": {"type": "string"}},
 )
+OPTION = record(
+    {
+        "temperature_c": {"type": "number"},
+        "hours_to_target": SPREAD,
+        "never_reaches_target": _SHARE,
+        "residual_activity_at_target": SPREAD,
+        "ceiling": SPREAD,
+        "window": WINDOW,
+        "charge_for_visit_mg": _NUMBER,
+        "chance_in_time": {"oneOf": [_SHARE, {"type": "null"}]},
+    },
+    window_width_h=_NUMBER,
+    keep_loss_at_target=SPREAD,
+    keep_loss_at_visit={"oneOf": [SPREAD, {"type": "null"}]},
+    ph_at_temperature=_NUMBER,
+    in_measured_range={"type": ["boolean", "null"]},
+    not_in_time=record(dict.fromkeys(("dies", "slow", "melts", "too_soon"), _SHARE)),
+    limit={"type": "string"},
+)
+_GAPS = {"type": "array", "items": _NUMBER, "minItems": 2}
+TEMPERATURES = record(
+    {"options": {"type": "array", "items": OPTION, "minItems": 1}},
+    digestplan={"const": 1},
+    title={"type": "string"},
+    draws={"type": "integer", "minimum": 1},
+    seed={"type": "integer"},
+    confidence=_SHARE,
+    set=record({"step": {"type": "integer"}, "temperature_c": {"type": "number"}}),
+    best_by_chance_c=_NUMBER,
+    best_by_harm_c=_NUMBER,
+    curve=record(
+        {
+            "temperature_c": _NUMBERS,
+            "hours_to_target_p50": _GAPS,
+            "chance_in_time": _GAPS,
+            "keep_loss_p50": _NUMBERS,
+        }
+    ),
+)
