@@ -4,6 +4,7 @@ from collections.abc import Iterator, Mapping
 from pathlib import PurePath
 from typing import Any
 
+from digestplan.plan.bench import checked_bench
 from digestplan.plan.clock import checked_start, checked_visits
 from digestplan.plan.enzyme import checked_enzyme
 from digestplan.plan.known import enzyme_entry, material_entry
@@ -61,6 +62,7 @@ def checked_plan(tables: Mapping[str, Any], name: str, problems: Problems) -> Pl
         notes=top.long_text("notes") or "",
         path=name,
         remarks=parts.remarks,
+        bench=checked_bench(top.table("bench")),
     )
 
 

@@ -23,7 +23,7 @@ class Field:
         The key.
     kind
         The kind of quantity, or ``text``, ``texts``, ``choice``, ``flag``, ``moment``, ``whole``,
-        ``times``, ``table``, ``tables``, ``programme``.
+        ``times``, ``temperatures``, ``table``, ``tables``, ``programme``.
     note
         What it means, in a sentence without its full stop.
     example

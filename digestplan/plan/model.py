@@ -226,6 +226,21 @@ class Visit:
 
 
 @dataclass(frozen=True, slots=True)
+class Bench:
+    """What the lab has; it limits what is suggested and changes no forecast.
+
+    Quantities, not values: what a lab has is no input of a forecast. ``incubators`` holds the
+    temperatures that there are [K]; ``most_charge`` the most enzyme for one digest and ``stock``
+    what there is of the lot [g]; ``programmable`` says whether a bath cools by itself.
+    """
+
+    incubators: tuple[Quantity, ...] = ()
+    most_charge: Quantity | None = None
+    stock: Quantity | None = None
+    programmable: bool = True
+
+
+@dataclass(frozen=True, slots=True)
 class Plan:
     """One sample's written treatment.
 
@@ -246,3 +261,4 @@ class Plan:
     notes: str = ""
     path: str | None = None
     remarks: tuple[str, ...] = ()
+    bench: Bench = field(default_factory=Bench)

@@ -31,6 +31,7 @@ _PLAN = (
     ),
     Field("sample", "table", "The piece of tissue", "", required=True),
     Field("lot", "table", "The bottle of enzyme", ""),
+    Field("bench", "table", "What the lab has: limits for `digestplan suggest`", ""),
     Field("enzyme", "table", "Kinetics that override the library's one by one", ""),
     Field("steps", "tables", "The treatment, in the order in which it is done", "", required=True),
 )
@@ -330,6 +331,24 @@ _ENZYME = (
     ),
 )
 
+_BENCH = (
+    Field(
+        "incubators",
+        "temperatures",
+        "Temperatures that there are; left out, any from 4 to 65 °C",
+        '["4 degC", "37 ± 0.5 degC", "56 degC"]',
+    ),
+    Field("most_charge", "mass", "The most enzyme for one digest", '"20 mg"', above=0.0),
+    Field("stock", "mass", "What there is of the lot", '"50 mg"', above=0.0),
+    Field(
+        "programmable",
+        "flag",
+        "Whether a bath can be programmed to cool by itself",
+        "false",
+        default="true",
+    ),
+)
+
 SAMPLE_SECTIONS = {
     "": _PLAN,
     "sample": _SAMPLE,
@@ -338,4 +357,5 @@ SAMPLE_SECTIONS = {
     "sample.damage": _DAMAGE,
     "lot": _LOT,
     "enzyme": _ENZYME,
+    "bench": _BENCH,
 }

@@ -21,7 +21,7 @@ _LONGEST_LINE = 200  # characters of a title, a name or a key
 _LONGEST_TEXT = 20_000  # characters of the notes
 _OVERRIDES = frozenset(range(0x202A, 0x202F)) | frozenset(range(0x2066, 0x206A))
 
-_OF_LISTS = {"times": "time"}  # what stands in a list
+_OF_LISTS = {"times": "time", "temperatures": "temperature"}  # what stands in a list
 
 # Stands for a value that is written wrongly: compares as false, and never leaves the checker.
 UNKNOWN = Quantity(nan)

@@ -22,7 +22,7 @@ from digestplan.problems import InputError, Problem
 _PART = re.compile(r"\.?(?:(?P<key>[A-Za-z0-9_-]+)|\[(?P<index>\d+)\])")
 
 _NO_SECONDS = re.compile(r"\d{4}-\d\d-\d\d[T ]\d\d:\d\d", re.ASCII)
-_STRUCTURED = {"programme", "tables", "texts", "times", "table"}
+_STRUCTURED = {"programme", "tables", "texts", "times", "temperatures", "table"}
 
 Written = str | int | float | bool | datetime | list[Any] | dict[str, Any] | None
 Route = list[str | int]

@@ -16,6 +16,7 @@ _KINDS = {
     "moment": "date with time",
     "whole": "whole number",
     "times": "list of times",
+    "temperatures": "list of temperatures",
     "table": "section",
     "tables": "list of tables",
     "programme": "temperature programme",
