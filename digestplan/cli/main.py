@@ -30,9 +30,6 @@ def main(arguments: Sequence[str] | None = None) -> int:
     """
     output.prepare()
     chosen = parser().parse_args(_joined(sys.argv[1:] if arguments is None else arguments))
-    if chosen.module is None:
-        parser().print_help(sys.stderr)
-        return diagnostics.WRONG_COMMAND
     command = getattr(import_module(f"digestplan.cli.{chosen.module}"), chosen.function)
     return diagnostics.run(partial(command, chosen))
 
@@ -63,9 +60,10 @@ def parser() -> argparse.ArgumentParser:
         allow_abbrev=False,
     )
     top.add_argument("--version", action="version", version=f"digestplan {__version__}")
-    top.set_defaults(module=None, function=None)
+    top.set_defaults(module="app", function="bare", register=None, draws=2000)
     commands = top.add_subparsers(title="commands", metavar="COMMAND")
     shared = shared_options()
+    _add_app(commands, shared)
     _add(commands, shared, "forecast", "forecast", "one plan's forecast, as a short report", "plan")
     add_comparisons(commands, shared)
     does = "the bench sheet (.pdf, .html or .md), or the times as a calendar (.ics)"
@@ -91,6 +89,18 @@ def shared_options() -> argparse.ArgumentParser:
         "--register", metavar="PATH-OR-URL", help="the lot register (default: the user's own)"
     )
     return shared
+
+
+def _add_app(
+    commands: "argparse._SubParsersAction[argparse.ArgumentParser]",
+    shared: argparse.ArgumentParser,
+) -> None:
+    opened = _add(commands, shared, "open", "app", "open the terminal app on a plan", "plan")
+    opened.set_defaults(function="open_plan")
+    does = "copy the demo plans to a folder, and open the app on one"
+    demo = _add(commands, shared, "demo", "app", does)
+    demo.add_argument("dir", metavar="DIR", nargs="?", help="where to (default: digestplan-demo)")
+    demo.set_defaults(function="demo")
 
 
 def _add(

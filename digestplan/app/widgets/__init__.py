@@ -1,0 +1,1 @@
+"""Widgets: they draw and take keys, and know no forecast code."""
