@@ -14,11 +14,9 @@ import numpy as np
 
 from digestplan.forecast.conditions import draw_enzyme
 from digestplan.forecast.draws import Draws
-from digestplan.forecast.environment import nothing_stated
 from digestplan.forecast.run import forecast, prepare
-from digestplan.forecast.steps.base import Carried
-from digestplan.forecast.steps.digest import course_of_step
-from digestplan.kinetics.state import nothing
+from digestplan.forecast.steps.base import untouched
+from digestplan.forecast.steps.digest import advance
 from digestplan.kinetics.temperature import arrhenius_factor
 from digestplan.plan.read import parse_plan, read_plan
 
@@ -82,11 +80,10 @@ def plan(depth=False):
 def engine(n_draws, depth=False):
     """A call that takes a course through the programme for so many draws, and its course."""
     job = prepare(plan(depth), Draws(plan(depth), n_draws, 1))
-    start = nothing(n_draws, job.response.geometry)
-    carried = Carried(0.0, None, start, nothing_stated(), None)
+    carried = untouched(job)
 
     def call():
-        return course_of_step(job.plan.steps[0], job, carried)
+        return advance(job.plan.steps[0], job, carried)[0]
 
     return call
 

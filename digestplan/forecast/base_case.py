@@ -3,10 +3,10 @@
 from math import inf
 
 from digestplan.forecast.draws import Draws
-from digestplan.forecast.passage import Passage, untouched
+from digestplan.forecast.passage import Passage
 from digestplan.forecast.run import prepare
 from digestplan.forecast.steps import run_step
-from digestplan.forecast.steps.base import Carried, Job
+from digestplan.forecast.steps.base import Carried, Job, untouched
 from digestplan.forecast.variants import Main, main_of, variant_job
 from digestplan.plan.model import Digest, Hold, Plan, Stop
 from digestplan.problems import InputError, Problem

@@ -13,7 +13,6 @@ from digestplan.forecast.amounts import ratio_in_plan_units
 from digestplan.forecast.conditions import EnzymeDraws, rates_at
 from digestplan.forecast.draws import Draws
 from digestplan.forecast.environment import liquid_of
-from digestplan.forecast.response import scaled_dose_to
 from digestplan.kinetics.depth import Geometry
 from digestplan.kinetics.dose import Course
 from digestplan.kinetics.extent import Law
@@ -110,7 +109,7 @@ def susceptibility_for(
     dose = np.maximum(after.dose, _LEAST)
     at_surface = after.local is None or geometry is None
     if at_surface and law.name != "two_pool":
-        return scaled_dose_to(law, extent, parameters(dose)) / dose
+        return law.scaled_dose(extent, *parameters(dose)) / dose
 
     def above(log_scaled: Array) -> Array:
         s = np.exp(log_scaled) / dose

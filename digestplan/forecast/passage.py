@@ -11,10 +11,10 @@ from functools import cached_property
 import numpy as np
 from numpy.typing import NDArray
 
-from digestplan.forecast.environment import Liquid, nothing_stated
-from digestplan.forecast.response import Response, scaled_dose_to
+from digestplan.forecast.environment import Liquid
+from digestplan.forecast.response import Response
 from digestplan.forecast.steps import run_step
-from digestplan.forecast.steps.base import Carried, Job
+from digestplan.forecast.steps.base import Carried, Job, untouched
 from digestplan.forecast.steps.digest import advance
 from digestplan.forecast.steps.stop import as_hold
 from digestplan.forecast.timeline import Timeline
@@ -22,7 +22,7 @@ from digestplan.kinetics.damage import keep_loss
 from digestplan.kinetics.dose import Course
 from digestplan.kinetics.inverse import time_to_effect
 from digestplan.kinetics.programme import FOR_EVER
-from digestplan.kinetics.state import State, nothing
+from digestplan.kinetics.state import State
 from digestplan.plan.model import Digest, Hold, Stop
 
 Array = NDArray[np.float64]
@@ -127,7 +127,7 @@ class Passage:
             return self._first(
                 lambda part: _timeline(part, response).time_to(response.extent, target)
             )
-        needed = scaled_dose_to(response.law, target, response.parameters)
+        needed = response.law.scaled_dose(target, *response.parameters)
         needed = needed / response.susceptibility
         return self._first(lambda part: time_to_effect(part.course, 1.0, 0.0, needed))
 
@@ -198,12 +198,6 @@ class Passage:
             lost[draws] = self.job.response.keep_loss(state, draws)
             by_heat[draws] = keep_loss(state.heat)
         return Seen(residual, lost, by_heat)
-
-
-def untouched(job: Job) -> Carried:
-    """Return what there is before the first step of a plan."""
-    start = nothing(job.draws.n_draws, job.response.geometry)
-    return Carried(0.0, None, start, nothing_stated(), None)
 
 
 def _timeline(part: Part, response: Response) -> Timeline:

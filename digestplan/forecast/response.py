@@ -7,7 +7,7 @@ from numpy.typing import NDArray
 
 from digestplan.kinetics.damage import keep_loss
 from digestplan.kinetics.depth import Geometry
-from digestplan.kinetics.extent import LAWS, Law
+from digestplan.kinetics.extent import Law
 from digestplan.kinetics.state import ALL, Draws, State
 
 Array = NDArray[np.float64]
@@ -64,29 +64,3 @@ class Response:
 def _not_negative(dose: Array) -> Array:
     """A dose at depths that nothing has reached may be below zero by the last digits."""
     return np.maximum(dose, 0.0)
-
-
-def scaled_dose_to(law: Law, extent: Array, parameters: tuple[Array, ...]) -> Array:
-    """
-    Return the scaled dose s·D that brings the sample to an extent.
-
-    Parameters
-    ----------
-    law
-        The extent law.
-    extent
-        Shape (n_draws,). [1]
-    parameters
-        What the law takes beside the scaled dose.
-
-    Returns
-    -------
-    scaled
-        Shape (n_draws,); infinite where the law never gets there. [1]
-    """
-    return law.scaled_dose(extent, *parameters)
-
-
-def law_named(name: str) -> Law:
-    """Return the extent law of that name; the plan's checker has already refused others."""
-    return LAWS[name]

@@ -7,17 +7,17 @@ from digestplan.forecast.amounts import weighed_mass
 from digestplan.forecast.cautions import cautions_of
 from digestplan.forecast.conditions import EnzymeDraws, draw_enzyme
 from digestplan.forecast.draws import Draws
-from digestplan.forecast.environment import nothing_stated
 from digestplan.forecast.known_run import Parameters, susceptibility_of
 from digestplan.forecast.limits import limits_of
-from digestplan.forecast.response import Response, law_named
+from digestplan.forecast.memory import keep_memory
+from digestplan.forecast.response import Response
 from digestplan.forecast.result import DigestForecast, Forecast, StepForecast
 from digestplan.forecast.steps import run_step
-from digestplan.forecast.steps.base import Carried, Job
+from digestplan.forecast.steps.base import Job, untouched
 from digestplan.forecast.steps.digest import concentration_per_ratio
 from digestplan.forecast.window import visit_chances, window
 from digestplan.kinetics.depth import Geometry, geometry
-from digestplan.kinetics.state import nothing
+from digestplan.kinetics.extent import LAWS
 from digestplan.plan.model import Digest, Plan
 
 Array = NDArray[np.float64]
@@ -67,6 +67,7 @@ def forecast(plan: Plan, n_draws: int = DRAWS, seed: int = SEED) -> Forecast:
 
 def prepare(plan: Plan, draws: Draws) -> Job:
     """Draw what holds for the whole plan: the enzyme, the sample's answer, the heat damage."""
+    keep_memory()
     enzyme = draw_enzyme(plan, draws)
     return Job(
         plan,
@@ -78,7 +79,7 @@ def prepare(plan: Plan, draws: Draws) -> Job:
 
 
 def _response(plan: Plan, draws: Draws, enzyme: EnzymeDraws) -> Response:
-    sample, law = plan.sample, law_named(plan.sample.law)
+    sample, law = plan.sample, LAWS[plan.sample.law]
     depth = _geometry(plan, enzyme)
     parameters = _law_parameters(plan, draws)
     first = next((step for step in plan.steps if isinstance(step, Digest)), None)
@@ -117,8 +118,7 @@ def _law_parameters(plan: Plan, draws: Draws) -> Parameters:
 
 def _run_steps(job: Job) -> list[StepForecast]:
     plan = job.plan
-    start = nothing(job.draws.n_draws, job.response.geometry)
-    carried = Carried(0.0, None, start, nothing_stated(), None)
+    carried = untouched(job)
     results = []
     for index, step in enumerate(plan.steps):
         open_ended = index == len(plan.steps) - 1

@@ -10,7 +10,6 @@ from digestplan.forecast.amounts import weighed_mass
 from digestplan.forecast.base_case import BaseCase, base_case
 from digestplan.forecast.enough import factor_for, is_simple
 from digestplan.forecast.environment import ph_at
-from digestplan.forecast.memory import keep_memory
 from digestplan.forecast.passage import Passage
 from digestplan.forecast.run import DRAWS, SEED
 from digestplan.forecast.steps.base import Job
@@ -182,7 +181,6 @@ def compare(
     comparison
         What a forecast of each variant would say, draw by draw.
     """
-    keep_memory()
     base = base_case(plan, n_draws, seed)
     wanted = [t + _CELSIUS for t in celsius]
     fine = np.arange(COLDEST, WARMEST + FINE / 2, FINE) + _CELSIUS if curve else np.zeros(0)

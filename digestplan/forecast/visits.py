@@ -1,25 +1,34 @@
 """Visits on a plan's clock, and which draws are in time at any of them."""
 
-from datetime import timedelta
+from collections.abc import Sequence
+from datetime import datetime, timedelta
 
 import numpy as np
 from numpy.typing import NDArray
 
-from digestplan.plan.model import Plan
+from digestplan.plan.model import Plan, Visit
 
 Array = NDArray[np.float64]
 Flags = NDArray[np.bool_]
 
 
-def visit_hours(plan: Plan) -> list[tuple[float, float]]:
-    """Return when each visit begins and ends, in hours from the plan's start; none without."""
-    if plan.start is None:
+def hours_of(visits: Sequence[Visit], start: datetime | None) -> list[tuple[float, float]]:
+    """Return when each visit begins and ends, in hours from a start; none without one."""
+    if start is None:
         return []
     hour = timedelta(hours=1)
-    return [
-        ((visit.start - plan.start) / hour, (visit.end - plan.start) / hour)
-        for visit in plan.visits
-    ]
+    return [((visit.start - start) / hour, (visit.end - start) / hour) for visit in visits]
+
+
+def visit_hours(plan: Plan) -> list[tuple[float, float]]:
+    """Return when each visit begins and ends, in hours from the plan's start; none without."""
+    return hours_of(plan.visits, plan.start)
+
+
+def met(begin: float, end: float, ready: Array, too_far: Array) -> Flags:
+    """Say which draws a visit meets: ready before it ends, not too far when it begins."""
+    found: Flags = (ready <= end) & (np.maximum(ready, begin) <= np.minimum(too_far, end))
+    return found
 
 
 def first_after(plan: Plan, hour: float) -> float | None:
@@ -44,7 +53,7 @@ def in_time(plan: Plan, ready: Array, too_far: Array) -> Flags:
     flags
         Shape (n_draws,); all false without visits.
     """
-    met = np.zeros(len(ready), dtype=bool)
+    at_any = np.zeros(len(ready), dtype=bool)
     for begin, end in visit_hours(plan):
-        met |= (ready <= end) & (np.maximum(ready, begin) <= np.minimum(too_far, end))
-    return met
+        at_any |= met(begin, end, ready, too_far)
+    return at_any

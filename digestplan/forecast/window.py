@@ -7,6 +7,7 @@ from datetime import datetime, timedelta
 import numpy as np
 from numpy.typing import NDArray
 
+from digestplan.forecast.visits import hours_of, met
 from digestplan.plan.model import Visit
 
 Array = NDArray[np.float64]
@@ -152,14 +153,9 @@ def visit_chances(
         In time: someone is there between ready and too far. Not ready: the visit is over before
         the sample is ready. Too far: the rest. The three sum to 1.
     """
-    if start is None:
-        return ()
     result = []
-    for visit in visits:
-        begins = (visit.start - start) / timedelta(hours=1)
-        ends = (visit.end - start) / timedelta(hours=1)
-        early = ready > ends
-        good = ~early & (np.maximum(ready, begins) <= np.minimum(too_far, ends))
+    for visit, (begins, ends) in zip(visits, hours_of(visits, start), strict=False):
+        early, good = ready > ends, met(begins, ends, ready, too_far)
         result.append(
             VisitChance(
                 visit, float(good.mean()), float(early.mean()), float((~early & ~good).mean())

@@ -1,8 +1,6 @@
 """Saving a plan file: only what was edited changes; comments and layout stay."""
 
-import os
 import re
-import secrets
 import tomllib
 from collections.abc import Mapping
 from datetime import datetime
@@ -16,6 +14,7 @@ from tomlkit.items import AoT
 
 from digestplan.plan.fields import SECTIONS
 from digestplan.plan.read import read_plan_text
+from digestplan.plan.replace import replace_file
 from digestplan.plan.wording import plain
 from digestplan.problems import InputError, Problem
 
@@ -63,7 +62,7 @@ def save_plan(path: str | PathLike[str], original_text: str, edits: Edits) -> st
         raise InputError(Problem("", message, name))
     text = edited_text(original_text, edits, name)
     try:
-        _replace(Path(path), text)
+        replace_file(Path(path), text.encode("utf-8"))
     except OSError as error:
         message = f"this file cannot be written: {error.strerror or 'no reason is given'}"
         raise InputError(Problem("", message, name)) from None
@@ -205,20 +204,3 @@ def _add(here: Any, part: str | int, value: Any) -> None:
 def _like(original: str, text: str) -> str:
     """Return a text with the line ends of the original."""
     return re.sub(r"\r?\n", "\r\n", text) if "\r\n" in original else text
-
-
-def _replace(path: Path, text: str) -> None:
-    """Write a new file beside the old one and put it in its place in one step."""
-    path = path.resolve()  # a link stays a link
-    temporary = path.with_name(f".{path.name[:40]}.{secrets.token_hex(6)}")
-    try:
-        with temporary.open("xb") as file:
-            file.write(text.encode("utf-8"))
-            file.flush()
-            os.fsync(file.fileno())
-        if path.exists():
-            temporary.chmod(path.stat().st_mode & 0o7777)
-        temporary.replace(path)
-    except BaseException:
-        temporary.unlink(missing_ok=True)
-        raise

@@ -8,9 +8,9 @@ from numpy.typing import NDArray
 
 from digestplan.forecast.conditions import EnzymeDraws
 from digestplan.forecast.draws import Draws
-from digestplan.forecast.environment import Liquid
+from digestplan.forecast.environment import Liquid, nothing_stated
 from digestplan.forecast.response import Response
-from digestplan.kinetics.state import State
+from digestplan.kinetics.state import State, nothing
 from digestplan.plan.model import Plan
 
 Array = NDArray[np.float64]
@@ -59,3 +59,9 @@ class Carried:
     volume: Array | None
     residues: Mapping[str, Array] = field(default_factory=dict)
     demineralised: Array | None = None
+
+
+def untouched(job: Job) -> Carried:
+    """Return what there is before the first step of a plan."""
+    start = nothing(job.draws.n_draws, job.response.geometry)
+    return Carried(0.0, None, start, nothing_stated(), None)

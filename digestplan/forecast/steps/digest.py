@@ -24,7 +24,7 @@ from digestplan.forecast.known_run import susceptibility_for
 from digestplan.forecast.result import Curve, DigestForecast
 from digestplan.forecast.steps.base import Carried, Job
 from digestplan.forecast.timeline import Timeline
-from digestplan.forecast.tissue import tissue_volume
+from digestplan.forecast.tissue import half_thickness, tissue_volume
 from digestplan.forecast.window import bands, on_clock, spread, window
 from digestplan.kinetics.damage import keep_loss
 from digestplan.kinetics.dose import Course
@@ -85,9 +85,11 @@ def advance(step: Digest | Hold, job: Job, carried: Carried) -> tuple[Course, Ar
     course, set_points, carried
         The course, the temperatures of its programme, and what the step leaves to the next.
     """
-    liquid, volume = _bath(step, job, carried)
-    course = course_of_step(step, job, carried)
+    volume = _volume(step, job, carried)
+    brought = carried.residues if isinstance(step, Hold) else _diluted(job, carried, volume)
+    liquid = _liquid(step, job, carried, brought)
     set_points = _set_points(step, job.draws, carried)
+    course = _course(step, job, carried, liquid, volume, set_points)
     at_end = course.cells.end_weights @ set_points
     after = replace(
         carried,
@@ -96,16 +98,21 @@ def advance(step: Digest | Hold, job: Job, carried: Carried) -> tuple[Course, Ar
         state=course.at_end(),
         liquid=liquid,
         volume=volume,
-        residues=_diluted(job, carried, volume) if isinstance(step, Digest) else carried.residues,
+        residues=brought,
     )
     return course, set_points, after
 
 
-def course_of_step(step: Digest | Hold, job: Job, carried: Carried) -> Course:
-    """Take the enzyme through a step's programme, from what the step before left."""
+def _course(
+    step: Digest | Hold,
+    job: Job,
+    carried: Carried,
+    liquid: Liquid,
+    volume: Array | None,
+    set_points: Array,
+) -> Course:
+    """The enzyme's course through a step's programme, from what the step before left."""
     charges, start = _charges(step, job, carried)
-    liquid, volume = _bath(step, job, carried)
-    set_points = _set_points(step, job.draws, carried)
     cells, rates = _cells_and_rates(step, job, liquid, volume, set_points, list(charges))
     by_cell = {0 if after == 0 else cells.cell_at(after) + 1: c for after, c in charges.items()}
     return Course(
@@ -119,13 +126,21 @@ def course_of_step(step: Digest | Hold, job: Job, carried: Carried) -> Course:
     )
 
 
-def _bath(step: Digest | Hold, job: Job, carried: Carried) -> tuple[Liquid, Array | None]:
-    """The liquid of a step and its volume; a hold keeps those of the step before."""
+def _volume(step: Digest | Hold, job: Job, carried: Carried) -> Array | None:
+    """Volume of a step's liquid, where it is known; a hold keeps that of the step before. [mL]"""
     if isinstance(step, Hold):
-        return carried.liquid, carried.volume
-    volume = None if step.volume is None else job.draws.of(step.volume)
-    brought = CarriedOver(_diluted(job, carried, volume), _working_temperature(step))
-    return liquid_of(step.environment, job.draws, brought), volume
+        return carried.volume
+    return None if step.volume is None else job.draws.of(step.volume)
+
+
+def _liquid(
+    step: Digest | Hold, job: Job, carried: Carried, brought: Mapping[str, Array]
+) -> Liquid:
+    """The liquid of a step; a hold keeps that of the step before."""
+    if isinstance(step, Hold):
+        return carried.liquid
+    with_it = CarriedOver(brought, _working_temperature(step))
+    return liquid_of(step.environment, job.draws, with_it)
 
 
 def _diluted(job: Job, carried: Carried, volume: Array | None) -> dict[str, Array]:
@@ -193,10 +208,7 @@ def _cells_and_rates(
     nominal = np.median(set_points, axis=1)
     depth = job.response.geometry is not None
     graded = depth and job.enzyme.enzyme.inactivation == "autolysis"
-    half = None
-    if depth:
-        assert job.plan.sample.thickness is not None
-        half = job.draws.of(job.plan.sample.thickness) / 2
+    half = half_thickness(job.plan, job.draws) if depth else None
     lag, per_ratio = lag_of(step, volume), concentration_per_ratio(job.plan, job.draws, volume)
 
     cells = compile_programme(legs, nominal, lag, breaks, graded)
