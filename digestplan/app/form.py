@@ -9,6 +9,7 @@ from typing import Any
 from digestplan.plan.field import Field
 from digestplan.plan.fields import SECTIONS, fields_of
 
+START = "sample.wet_mass"  # where the focus goes first
 _INDEX = re.compile(r"\[\d+\]")
 _NOT_EDITED = {"table", "tables"}
 _CHARGES = ("charge", "ratio", "concentration")

@@ -16,7 +16,7 @@ def head(session: "Session", disk: "DiskState", state: str) -> Content:
     """Return the line at the top: title, file, whether it is saved, and what is going on."""
     title = text_of(session.tables.get("title")) or "Untitled plan"
     name = "not saved yet" if session.path is None else session.path.name
-    parts = [text.literal(f" {title}", "bold"), text.literal(f"  {name}", "$secondary")]
+    parts = [text.literal(f" {name}", "$secondary")]
     if session.dirty:
         parts.append(text.literal(" * changed", "bold $text-warning"))
     if disk in {"changed", "gone"}:
@@ -24,6 +24,7 @@ def head(session: "Session", disk: "DiskState", state: str) -> Content:
         parts.append(text.literal(f"  {told}", "bold $text-error"))
     if state:
         parts.append(text.literal(f"  {state}", "italic $secondary"))
+    parts.append(text.literal(f"  {title}", "bold"))
     return Content.assemble(*parts)
 
 
@@ -61,7 +62,7 @@ def said(answer: Answer) -> Content:
         first, n = others[0], len(answer.cautions)
         more = "" if n == 1 else f"  (F5: all {n})"
         label = first.level.capitalize()
-        parts.append(_labelled(label, _where(first.step) + first.text, more))
+        parts.append(_labelled(label, _where(first.step) + _short(first.text), more))
     return Content("\n").join(parts)
 
 
@@ -71,6 +72,12 @@ def _labelled(label: str, told: str, more: str = "") -> Content:
         text.literal(more.strip() + " " if more else "", "bold"),
         text.literal(told),
     )
+
+
+def _short(told: str) -> str:
+    """Return the first sentence of a caution; all of it is one key away, and on every sheet."""
+    first, point, rest = told.partition(". ")
+    return f"{first}. …" if point and rest else told
 
 
 def _where(step: int | None) -> str:

@@ -1,7 +1,8 @@
 """The app: one session, one worker, and the screens over them; it knows no science."""
 
 from collections import deque
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
+from math import inf
 from pathlib import Path
 from time import perf_counter
 from typing import ClassVar
@@ -9,17 +10,20 @@ from typing import ClassVar
 from textual import work
 from textual.app import App
 from textual.binding import Binding, BindingType
+from textual.filter import LineFilter
 from textual.message import Message
 
 from digestplan.app import remembered, text, themes
 from digestplan.app.answer import ROUGH_DRAWS, Answer
 from digestplan.app.commands import Commands
+from digestplan.app.form import START
 from digestplan.app.messages import Answered
 from digestplan.app.opening import Opening
+from digestplan.app.plain_glyphs import PlainGlyphs
 from digestplan.app.recovery import Recovery
 from digestplan.app.screens.plan import PlanScreen
 from digestplan.app.session import DiskState, Session
-from digestplan.app.terminal import Look, glyph_level, no_color
+from digestplan.app.terminal import Level, Look, glyph_level, no_color
 from digestplan.app.widgets.canvas import Drawn
 from digestplan.app.widgets.form import Form
 from digestplan.app.worker import Finished, LatestWins
@@ -61,13 +65,15 @@ class DigestplanApp(Opening, App[None]):
         self._chosen = session is not None
         self.session = session or Session('digestplan = 1\ntitle = "New plan"\n')
         self.register, self.draws = register, draws
-        self.level = glyph_level()
+        self.level: Level = glyph_level()
         self.recovery = Recovery()
         self.disk: DiskState = "unsaved"
         self.answer: Answer | None = None
+        self.fresh = False
         self.delays: deque[float] = deque(maxlen=2000)  # [s] from an edit to its redrawn answer
         self._asked: dict[str, float] = {}
-        self._cost = 0.0
+        self._cost = inf  # [s] of the last full forecast
+        self._plain = PlainGlyphs()
         self._asker = LatestWins(self, self._answers)
         for theme in themes.OWN:
             self.register_theme(theme)
@@ -79,6 +85,11 @@ class DigestplanApp(Opening, App[None]):
         """How widgets are to draw on this terminal."""
         poor = self.console.color_system in {None, "standard", "windows"}
         return Look(self.level, pattern=poor or self.no_color or self.native_ansi_color)
+
+    def get_line_filters(self) -> Sequence[LineFilter]:
+        """Return what every line goes through; in an ASCII terminal, all glyphs."""
+        filters = super().get_line_filters()
+        return [*filters, self._plain] if self.level == "ascii" else filters
 
     def get_theme_variable_defaults(self) -> dict[str, str]:
         """Return the colours of the drawings for themes that have none of their own."""
@@ -92,7 +103,7 @@ class DigestplanApp(Opening, App[None]):
 
     def on_ready(self) -> None:
         """Fill the form and load what is heavy, now that the first frame stands."""
-        self.plan_screen.show_plan("title")
+        self.plan_screen.show_plan(START)
         self.warm_up()
         self.set_interval(_KEEP_EVERY, self._keep)
         self.theme_changed_signal.subscribe(self, lambda theme: remembered.keep_theme(theme.name))
@@ -147,6 +158,9 @@ class DigestplanApp(Opening, App[None]):
             take = getattr(screen, "take_answer", None)
             if take is not None:
                 take(message.answer, rough=message.rough)
+        if self.fresh and message.answer.problems and self.screen is self.plan_screen:
+            self.plan_screen.action_text()
+        self.fresh = False
         asked = self._asked.pop(message.answer.text, None)
         if asked is not None and not message.rough:
             self._asked.clear()

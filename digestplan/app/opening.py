@@ -5,6 +5,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 from digestplan.app import remembered, text
+from digestplan.app.form import START
 from digestplan.app.recovery import Kept, Recovery
 from digestplan.app.screens.ask import Ask, AskName
 from digestplan.app.session import DiskState, Session
@@ -22,6 +23,7 @@ class Opening:
     session: Session
     recovery: Recovery
     disk: DiskState
+    fresh: bool  # whether the first answer to a plan that was opened is still to come
     plan_screen: "PlanScreen"
     push_screen: Any
     exit: Any
@@ -34,8 +36,9 @@ class Opening:
         self.disk = self.session.state_on_disk()
         screen = self.plan_screen
         screen.answer, screen.notes = None, {}
+        self.fresh = self.session.path is not None
         if not first:
-            screen.show_plan("title")
+            screen.show_plan(START)
         self.ask()
         path = self.session.path
         if path is None:
@@ -44,8 +47,6 @@ class Opening:
         kept = [k for k in self.recovery.found(path) if k.text != self.session.text]
         if kept:
             self._offer(kept[0])
-        elif not self.session.tables:
-            screen.action_text()
 
     def _offer(self, kept: Kept) -> None:
         when = kept.when.isoformat(" ", "minutes")
@@ -58,7 +59,7 @@ class Opening:
         def decided(answer: str | None) -> None:
             if answer == "take":
                 self.session.replace(kept.text)
-                self.plan_screen.show_plan("title")
+                self.plan_screen.show_plan(START)
                 self.ask()
             if answer in {"take", "drop"}:
                 kept.file.unlink(missing_ok=True)
@@ -164,7 +165,7 @@ class Opening:
             self.tell(str(error), wrong=True)
             return
         self.disk = self.session.state_on_disk()
-        self.plan_screen.show_plan("title")
+        self.plan_screen.show_plan(START)
         self.ask()
 
     def action_leave(self) -> None:

@@ -83,7 +83,7 @@ def _celsius(at: str) -> list[float]:
 
 
 _HEADS = ("at", "to target", "ready", "too far", "active then", "weigh in", "in time")
-_WIDTHS = (8, 10, 10, 10, 12, 10, 8)
+_WIDTHS = (9, 11, 12, 12, 13, 11, 9)
 
 
 def _line(cells: tuple[str, ...]) -> str:

@@ -41,12 +41,15 @@ class Session:
     ----------
     tables
         What the text holds, as the TOML reader gives it; empty where it is no TOML.
+    readable
+        Whether it is TOML.
     """
 
     def __init__(self, text: str, path: Path | None = None, on_disk: str | None = None) -> None:
         self.path = path
         self.on_disk = on_disk
         self.tables: Mapping[str, Any] = {}
+        self.readable = True
         self._undo: list[Done] = []
         self._redo: list[Done] = []
         self._place = ""  # that the last edit went to, as long as it is still being typed
@@ -87,8 +90,9 @@ class Session:
         self._text = text
         try:
             self.tables = tomllib.loads(text.removeprefix("\ufeff"))
+            self.readable = True
         except (tomllib.TOMLDecodeError, RecursionError):
-            self.tables = {}
+            self.tables, self.readable = {}, False
 
     def _do(self, text: str, place: str) -> None:
         if text == self._text:
@@ -117,7 +121,9 @@ class Session:
         InputError
             If it fits nowhere; then nothing has changed.
         """
-        self._do(edited_text(self._text, {place: written}, self.name), place)
+        going_on = place == self._place and bool(self._undo)
+        base = self._undo[-1].text if going_on else self._text  # a key emptied on the way stays
+        self._do(edited_text(base, {place: written}, self.name), place)
 
     def edit_all(self, edits: Mapping[str, Written]) -> None:
         """Write several values as one edit."""

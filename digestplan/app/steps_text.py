@@ -90,7 +90,10 @@ class _Blocks:
 
 
 def _steps(text: str) -> list[Any]:
-    found = tomllib.loads(text.removeprefix("\ufeff")).get("steps", [])
+    try:
+        found = tomllib.loads(text.removeprefix("\ufeff")).get("steps", [])
+    except (tomllib.TOMLDecodeError, RecursionError):
+        raise _refusal() from None
     if not isinstance(found, list):
         raise _refusal()
     return found
@@ -142,7 +145,7 @@ def _joined(blocks: _Blocks, original: str, meant: list[Any]) -> str:
 def _checked(text: str, meant: list[Any]) -> str:
     try:
         found = tomllib.loads(text.removeprefix("\ufeff")).get("steps", [])
-    except tomllib.TOMLDecodeError:
+    except (tomllib.TOMLDecodeError, RecursionError):
         raise _refusal() from None
     if found != meant:
         raise _refusal()

@@ -1,14 +1,11 @@
 """What the app's tests share: a terminal that is the same everywhere, and a way to drive it."""
 
 import contextlib
-import os
 from pathlib import Path
 
 import pytest
 from textual.worker import WorkerCancelled
 
-os.environ["TEXTUAL_COLOR_SYSTEM"] = "truecolor"
-os.environ["TEXTUAL_ANIMATIONS"] = "none"
 DEMO = Path(__file__).parents[2] / "presets_demo"
 
 
@@ -17,6 +14,7 @@ def _alone(monkeypatch, tmp_path):
     """Keep what the app remembers, and the terminal's own settings, out of the tests."""
     monkeypatch.setenv("DIGESTPLAN_STATE", str(tmp_path / "state"))
     monkeypatch.setenv("DIGESTPLAN_GLYPHS", "braille")
+    monkeypatch.setattr("textual.constants.COLOR_SYSTEM", "truecolor")  # else TERM decides
     monkeypatch.delenv("NO_COLOR", raising=False)
     monkeypatch.chdir(tmp_path)
 

@@ -288,3 +288,24 @@ def test_steps_of_the_demo_plans_survive_being_moved_about(path):
     assert session.tables == tomllib.loads(text)
     comments = [line for line in text.splitlines() if line.startswith("#")]
     assert [line for line in session.text.splitlines() if line.startswith("#")] == comments
+
+
+def test_a_value_typed_anew_from_nothing_keeps_its_place_and_comment():
+    """Emptying a field on the way to another value does not move its key."""
+    session = Session(PLAN)
+    for typed in ("8 m", "8", None, "9", "9 mg"):
+        session.edit("steps[0].charge", typed)
+
+    assert session.text == PLAN.replace('"8 mg"', '"9 mg"')
+
+
+def test_a_text_that_is_no_toml_refuses_edits_of_steps_in_words():
+    """Steps of a broken text are left alone, and that is said; an empty text is readable."""
+    session = Session('8"8.=7 ')
+
+    assert not session.readable
+    assert Session("").readable
+    for change in (lambda: session.add_step("hold", 0), lambda: session.edit("title", "x")):
+        with pytest.raises(InputError):
+            change()
+    assert session.text == '8"8.=7 '

@@ -47,7 +47,7 @@ class AskName(ModalScreen[str]):
         """Yield the question and a field."""
         with Vertical(classes="dialog"):
             yield Static(literal(self._question), classes="question")
-            yield Input(self._proposed, select_on_focus=False)
+            yield Input(self._proposed, select_on_focus=False, compact=True)
             yield Static(literal("Enter takes it, Esc goes back"), classes="hint")
 
     def on_input_submitted(self, message: Input.Submitted) -> None:

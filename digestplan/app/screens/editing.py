@@ -38,6 +38,8 @@ class Editing:
     def _after(self, place: str | None) -> None:
         self.show_plan(place)
         self.app.ask()
+        if not self.session.readable:  # undone into a text that is being mended
+            self.app.plan_screen.action_text()
 
     def _tell(self, error: InputError) -> None:
         self.app.tell(error.problems[0].message, wrong=True)

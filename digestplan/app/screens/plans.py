@@ -39,7 +39,11 @@ class PlansScreen(Screen[None]):
     def compose(self) -> ComposeResult:
         """Yield the field and the list."""
         yield Static(text.literal(" Plans"), classes="title")
-        yield Input(placeholder="name of a plan's file, then Enter; ↓ goes to the list", id="path")
+        yield Input(
+            placeholder="name of a plan's file, then Enter; ↓ goes to the list",
+            id="path",
+            compact=True,
+        )
         yield OptionList(id="plans")
         yield Footer()
 

@@ -39,7 +39,7 @@ class TemperaturesScreen(Screen[None]):
     def compose(self) -> ComposeResult:
         """Yield the field, the options and the curve."""
         yield Static(text.literal(" Temperatures: the same plan at each"), classes="title")
-        yield Input(_AT, id="at", select_on_focus=False)
+        yield Input(_AT, id="at", select_on_focus=False, compact=True)
         yield Static("", id="columns")
         yield OptionList(id="options")
         yield Static(text.LOADING, id="best")

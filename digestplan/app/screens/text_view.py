@@ -11,6 +11,7 @@ from textual.widgets.option_list import Option
 
 from digestplan.app import text
 from digestplan.app.answer import Answer
+from digestplan.app.form import START
 
 if TYPE_CHECKING:
     from digestplan.app.main import DigestplanApp
@@ -23,7 +24,7 @@ class TextScreen(Screen[None]):
         Binding("escape", "back", "Back to the form", key_display="Esc", priority=True),
         Binding("f2", "save", "Save", key_display="F2"),
         Binding("f3", "plans", "Plans", key_display="F3"),
-        Binding("f6", "other", "Text / problems", key_display="F6"),
+        Binding("f6", "other", "Text / problems", key_display="F6", priority=True),
         Binding("f10", "app.leave", "Leave", key_display="F10"),
     ]
     app: "DigestplanApp"
@@ -90,9 +91,9 @@ class TextScreen(Screen[None]):
 
     def action_back(self) -> None:
         """Go back to the form, where the text can be read as one."""
-        if not self.app.session.tables:
+        if not self.app.session.readable:
             self.app.tell(text.BROKEN, wrong=True)
             return
         self.app.session.pause()
-        self.app.plan_screen.show_plan("title")
+        self.app.plan_screen.show_plan(START)
         self.dismiss()
