@@ -72,9 +72,7 @@ def _pdf(chosen: argparse.Namespace) -> Writer:
         if (error.name or "").split(".")[0] != "reportlab":
             raise
         raise InputError(Problem("", _NO_PDF)) from None
-    if getattr(chosen, "paper", None) == "letter":
-        return lambda _, sheet: pdf(sheet, "letter")
-    return lambda _, sheet: pdf(sheet, "a4")
+    return lambda _, sheet: pdf(sheet, chosen.paper)
 
 
 def _calendar(chosen: argparse.Namespace) -> Writer:

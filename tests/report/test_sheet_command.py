@@ -24,7 +24,7 @@ STARTS = {
 def asked(output, **more):
     """What the command line hands over."""
     told = {"plan": str(DEMO), "output": output, "json": False, "draws": 32, "seed": 1}
-    told["register"] = None
+    told |= {"register": None, "paper": "a4"}
     return argparse.Namespace(**{**told, **more})
 
 
@@ -190,3 +190,15 @@ def test_html_and_markdown_do_not_load_reportlab():
     for heavy in ("reportlab", "pandas", "sqlalchemy", "textual", "tomlkit", "icalendar"):
         assert f"'{heavy}'" not in done.stderr
     assert "'numpy'" in done.stderr
+
+
+@pytest.mark.parametrize(("words", "width"), [([], 595), (["--paper", "letter"], 612)])
+def test_the_paper_of_a_pdf_is_the_one_asked_for(words, width, tmp_path):
+    """A PDF is on A4 unless the command line asks for Letter."""
+    from pypdf import PdfReader
+
+    from digestplan.cli.main import main
+
+    target = tmp_path / "sheet.pdf"
+    assert main(["sheet", str(DEMO), "-o", str(target), "--draws", "32", *words]) == 0
+    assert round(float(PdfReader(target).pages[0].mediabox.width)) == width
