@@ -69,9 +69,7 @@ def parser() -> argparse.ArgumentParser:
     does = "the bench sheet (.pdf, .html or .md), or the times as a calendar (.ics)"
     sheet = _add(commands, shared, "sheet", "sheet", does, "plan")
     sheet.add_argument("-o", "--output", metavar="FILE", help="where it goes; its ending says how")
-    sheet.add_argument(
-        "--paper", choices=["a4", "letter"], default="a4", help="of a PDF (default a4)"
-    )
+    sheet.add_argument("--paper", choices=["a4", "letter"], help="of a PDF (default a4)")
     _add(commands, shared, "library", "library", "what the library knows, with its sources", "key")
     add_lot(commands, shared)
     add_assay(commands, shared)

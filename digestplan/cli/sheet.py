@@ -72,7 +72,7 @@ def _pdf(chosen: argparse.Namespace) -> Writer:
         if (error.name or "").split(".")[0] != "reportlab":
             raise
         raise InputError(Problem("", _NO_PDF)) from None
-    return lambda _, sheet: pdf(sheet, chosen.paper)
+    return lambda _, sheet: pdf(sheet, chosen.paper or "a4")
 
 
 def _calendar(chosen: argparse.Namespace) -> Writer:

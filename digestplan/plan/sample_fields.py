@@ -31,7 +31,7 @@ _PLAN = (
     ),
     Field("sample", "table", "The piece of tissue", "", required=True),
     Field("lot", "table", "The bottle of enzyme", ""),
-    Field("bench", "table", "What the lab has: limits for suggestions, which are still to come", ""),
+    Field("bench", "table", "What the lab has, for suggestions that are to come", ""),
     Field("enzyme", "table", "Kinetics that override the library's one by one", ""),
     Field("steps", "tables", "The treatment, in the order in which it is done", "", required=True),
 )
